@@ -1,0 +1,50 @@
+// SPDX-License-Identifier: GPL-3.0-or-later
+// tally: running counts of symbols, errors, bits, transitions, with the account of what was excluded.
+#pragma once
+
+#include "halfplane/signal_set.h"
+#include "halfplane/symbol_code.h"
+
+#include <array>
+#include <cstddef>
+#include <cstdint>
+#include <map>
+#include <utility>
+#include <vector>
+
+namespace halfplane {
+
+/*!
+ * Counts of one stretch of symbols. Two tallies of adjacent stretches add up with merge(). All counts are
+ * 64-bit; nothing is ever averaged away.
+ */
+class tally
+{
+public:
+    explicit tally(const signal_set& set);
+
+    /// One judged symbol: sent and decided are indices below set.size().
+    void count(std::size_t sent, std::size_t decided);
+    void count_nonfinite() { ++nonfinite; }
+    void count_excluded(exclusion cause) { ++excluded[-1 - static_cast<int>(cause)]; }
+    void merge(const tally& later);
+
+    std::uint64_t symbols = 0, symbol_errors = 0; ///< judged, and of these in error
+    std::uint64_t bits = 0, bit_errors = 0;
+    std::uint64_t bit_errors_squared = 0; ///< Σh² over erroneous symbols, h the wrong bits of one symbol
+    std::uint64_t nonfinite = 0;          ///< NaN or Inf where a reference was known
+    std::array<std::uint64_t, exclusion_count> excluded{}; ///< by cause, in the order of `exclusion`
+    std::vector<std::uint64_t> sent;      ///< judged symbols by index sent
+    std::vector<std::uint64_t> by_bit;    ///< bit errors by position, [0] the leftmost
+    std::map<std::pair<std::uint16_t, std::uint16_t>, std::uint64_t> transitions; ///< (sent, decided) → count, errors only
+
+    std::uint64_t accounted() const; ///< symbols + nonfinite + Σ excluded
+    /// D = Σh²/Σh (measurement of clumping of bit errors within symbols); 1 with no errors.
+    double bit_dispersion() const;
+
+private:
+    std::vector<label_t> d_labels;
+    unsigned d_label_bits;
+};
+
+} // namespace halfplane
