@@ -1,0 +1,13 @@
+// SPDX-License-Identifier: GPL-3.0-or-later
+// blocks_python: the GNU Radio blocks for Python.
+#include "blocks/bind.h"
+
+namespace py = pybind11;
+
+PYBIND11_MODULE(blocks_python, m)
+{
+    // The base classes of every block, and signal_set, are registered by these two.
+    py::module::import("gnuradio.gr");
+    py::module::import("gnuradio.halfplane.core_python");
+    bind_point_mapper(m);
+}
