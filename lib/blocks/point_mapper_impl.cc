@@ -53,10 +53,12 @@ int point_mapper_impl::work(int noutput_items, gr_vector_const_void_star &in, gr
     for (int k = 0; k < noutput_items; ++k) {
         const int index = symbol_at(in[0], k);
         if (index < 0) {
+            if (k > 0)
+                return k; // what is good goes out first
             d_logger->error("symbol {:d} of the input is not in the set of {:d} points; the stream ends here",
-                            nitems_written(0) + static_cast<std::uint64_t>(k),
+                            nitems_written(0),
                             d_set.size());
-            return k > 0 ? k : WORK_DONE;
+            return WORK_DONE;
         }
         samples[k] = d_points[static_cast<std::size_t>(index)];
     }
