@@ -1,0 +1,85 @@
+# SPDX-License-Identifier: GPL-3.0-or-later
+"""The command line `halfplane`: one module a command, loaded when its command is asked for."""
+
+import importlib
+import sys
+
+import click
+
+# Exit codes, the same for every command.
+DONE, FAILED, BAD_USAGE, UNDECIDED = 0, 1, 2, 3
+
+_COMMANDS = {
+    "inspect": "facts about a constellation: distances, neighbours, symmetries, labels",
+    "curve": "error rates against Es/N0: exact, bounds, approximation",
+    "require": "the Es/N0 that a target error rate needs",
+    "plan": "how many symbols a test of an error rate takes",
+    "simulate": "count errors in seeded noise, beside the exact rate",
+    "sets": "the constellations that have names",
+}
+
+
+class _Commands(click.Group):
+    """A group that imports a command's module only when it is run, and lists them without importing any."""
+
+    def list_commands(self, ctx):
+        return list(_COMMANDS)
+
+    def get_command(self, ctx, name):
+        if name not in _COMMANDS:
+            return None
+        return importlib.import_module(f"{__name__}.{name}").command
+
+    def format_commands(self, ctx, formatter):
+        with formatter.section("Commands"):
+            formatter.write_dl(list(_COMMANDS.items()))
+
+
+def _print_version(ctx, param, asked):
+    if asked and not ctx.resilient_parsing:
+        from .. import core_python
+
+        click.echo(f"halfplane {core_python.__version__}")
+        ctx.exit()
+
+
+@click.group(cls=_Commands, context_settings={"help_option_names": ["-h", "--help"]})
+@click.option("--version", is_flag=True, is_eager=True, expose_value=False, callback=_print_version, help="Print the version.")
+def halfplane():
+    """Exact error rates of any two-dimensional constellation.
+
+    SET, wherever it stands, is a name (see `halfplane sets`) or the path of a set file, JSON or CSV.
+    RANGE is LO..HI/STEP with both ends in, or one number, in dB.
+
+    Exit codes: 0 done, 1 judged and failed, 2 bad usage or input, 3 undecided.
+    """
+
+
+def run(arguments=None):
+    """Runs the command line and ends the process; every refusal is one line on stderr and exit code 2."""
+    sys.exit(_run(arguments))
+
+
+def _run(arguments):
+    try:
+        result = halfplane.main(arguments, prog_name="halfplane", standalone_mode=False)
+        sys.stdout.flush()
+        return result if isinstance(result, int) else DONE
+    except click.exceptions.Exit as exit_:
+        return exit_.exit_code
+    except click.ClickException as refused:
+        return _refuse(refused.format_message(), getattr(refused, "ctx", None))
+    except (ValueError, OSError) as refused:
+        if isinstance(refused, BrokenPipeError):
+            sys.stderr.close()  # the reader of a pipe has gone; nothing is left to say
+            return DONE
+        return _refuse(str(refused))
+    except (KeyboardInterrupt, click.Abort):
+        print("halfplane: interrupted", file=sys.stderr)
+        return 130
+
+
+def _refuse(message, ctx=None):
+    where = ctx.command_path if ctx is not None else "halfplane"
+    print(f"{where}: {' '.join(message.split())}", file=sys.stderr)
+    return BAD_USAGE

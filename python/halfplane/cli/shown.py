@@ -1,0 +1,84 @@
+# SPDX-License-Identifier: GPL-3.0-or-later
+"""How numbers and tables look on a terminal."""
+
+import math
+import sys
+
+from rich.console import Console
+from rich.table import Table
+from rich.text import Text
+
+# One look for the whole project; the same roles as in plots.style, in terminal colours.
+STRONG, QUIET, GOOD, BAD, WARN = "bold", "dim", "green", "red", "yellow"
+
+
+def console(stream=None):
+    """A console that never colours a file or a pipe, and is wide enough there for any table."""
+    stream = stream or sys.stdout
+    width = None if stream.isatty() else 160
+    return Console(file=stream, width=width, highlight=False, soft_wrap=False)
+
+
+def table(*columns, title=None):
+    """An open table: a head, a rule, right-aligned figures. A column is its head, or (head, style)."""
+    result = Table(
+        title=title, title_justify="left", title_style=STRONG, box=_RULE, pad_edge=False, header_style=STRONG, padding=(0, 1)
+    )
+    for column in columns:
+        head, style = (column, None) if isinstance(column, str) else column
+        result.add_column(head, justify="right", style=style, no_wrap=True)
+    return result
+
+
+def facts(pairs, title=None):
+    """Name and value, two columns; pairs whose value is None are left out."""
+    result = Table(title=title, title_justify="left", title_style=STRONG, box=None, show_header=False, pad_edge=False, padding=(0, 2, 0, 0))
+    result.add_column(style=QUIET, no_wrap=True)
+    result.add_column(overflow="fold")
+    for name, value in pairs:
+        if value is not None:
+            result.add_row(name, value if isinstance(value, Text) else str(value))
+    return result
+
+
+def rate(value, ln=None):
+    """An error rate, 4.32e-05; below the smallest double from its natural logarithm; a dash where not known."""
+    if value is not None and value >= 1e-300:
+        return f"{value:.3e}" if value < 0.1 or value >= 10 else f"{value:.4f}"
+    if ln is None or not math.isfinite(ln):
+        return "–" if value is None else f"{value:.3e}"
+    exponent = math.floor(ln / math.log(10))
+    mantissa = math.exp(ln - exponent * math.log(10))
+    if mantissa >= 9.9995:
+        mantissa, exponent = 1.0, exponent + 1
+    return f"{mantissa:.3f}e{exponent}"
+
+
+def db(value, digits=2):
+    """Decibels; a dash where not known; no minus sign before a zero."""
+    if value is None:
+        return "–"
+    return f"{round(value, digits) + 0.0:.{digits}f}"
+
+
+def span(low, high):
+    """An interval of rates; only the upper end stands where no error was counted."""
+    if high is None:
+        return "–"
+    if low is None:
+        return f"≤ {rate(high)}"
+    return f"{rate(low)} … {rate(high)}"
+
+
+def count(value):
+    """A whole number in groups of three."""
+    return f"{value:,}".replace(",", "\u202f")
+
+
+def _rule():
+    from rich.box import Box
+
+    return Box("    \n    \n ── \n    \n    \n    \n    \n    \n")
+
+
+_RULE = _rule()
