@@ -8,12 +8,12 @@
 
 namespace gr::halfplane {
 
-point_mapper::sptr point_mapper::make(const ::halfplane::signal_set &set, const std::string &input)
+point_mapper::sptr point_mapper::make(const ::halfplane::signal_set& set, const std::string& input)
 {
     return gnuradio::make_block_sptr<point_mapper_impl>(set, input);
 }
 
-point_mapper_impl::point_mapper_impl(const ::halfplane::signal_set &set, const std::string &input)
+point_mapper_impl::point_mapper_impl(const ::halfplane::signal_set& set, const std::string& input)
     : gr::sync_decimator(
           "point_mapper",
           gr::io_signature::make(1, 1, item_size(parse_symbol_format("point_mapper", "input", input))),
@@ -25,31 +25,31 @@ point_mapper_impl::point_mapper_impl(const ::halfplane::signal_set &set, const s
 }
 
 /// Index of symbol k of the input, or −1 where the set has no such symbol.
-int point_mapper_impl::symbol_at(const void *in, int k) const
+int point_mapper_impl::symbol_at(const void* in, int k) const
 {
     switch (d_format) {
     case symbol_format::indices: {
-        const int index = static_cast<const std::int16_t *>(in)[k];
+        const int index = static_cast<const std::int16_t*>(in)[k];
         return index < static_cast<int>(d_set.size()) ? index : -1;
     }
     case symbol_format::labels: {
-        const int label = static_cast<const std::int16_t *>(in)[k];
+        const int label = static_cast<const std::int16_t*>(in)[k];
         return label < 0 ? -1 : d_set.index_of_label(static_cast<unsigned>(label));
     }
     case symbol_format::bits:
         break;
     }
     const unsigned count = d_set.label_bits();
-    const auto *bits = static_cast<const std::uint8_t *>(in) + static_cast<std::size_t>(k) * count;
+    const auto* bits = static_cast<const std::uint8_t*>(in) + static_cast<std::size_t>(k) * count;
     unsigned label = 0;
     for (unsigned bit = 0; bit < count; ++bit)
         label = label << 1 | (bits[bit] & 1u);
     return d_set.index_of_label(label);
 }
 
-int point_mapper_impl::work(int noutput_items, gr_vector_const_void_star &in, gr_vector_void_star &out)
+int point_mapper_impl::work(int noutput_items, gr_vector_const_void_star& in, gr_vector_void_star& out)
 {
-    auto *samples = static_cast<gr_complex *>(out[0]);
+    auto* samples = static_cast<gr_complex*>(out[0]);
     for (int k = 0; k < noutput_items; ++k) {
         const int index = symbol_at(in[0], k);
         if (index < 0) {

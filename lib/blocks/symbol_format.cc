@@ -8,7 +8,7 @@
 namespace gr::halfplane {
 
 symbol_format
-parse_symbol_format(const std::string &block, const std::string &parameter, const std::string &text)
+parse_symbol_format(const std::string& block, const std::string& parameter, const std::string& text)
 {
     if (text == "indices")
         return symbol_format::indices;
@@ -25,7 +25,7 @@ std::size_t item_size(symbol_format format) noexcept
     return format == symbol_format::bits ? sizeof(std::uint8_t) : sizeof(std::int16_t);
 }
 
-int items_per_symbol(symbol_format format, const ::halfplane::signal_set &set) noexcept
+int items_per_symbol(symbol_format format, const ::halfplane::signal_set& set) noexcept
 {
     return format == symbol_format::bits ? static_cast<int>(set.label_bits()) : 1;
 }

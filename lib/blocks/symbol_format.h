@@ -13,10 +13,10 @@ enum class symbol_format { indices, labels, bits };
 
 /// \throws std::invalid_argument naming block, parameter and value
 symbol_format
-parse_symbol_format(const std::string &block, const std::string &parameter, const std::string &text);
+parse_symbol_format(const std::string& block, const std::string& parameter, const std::string& text);
 
 /// Bytes of one stream item, and items of one symbol.
 std::size_t item_size(symbol_format format) noexcept;
-int items_per_symbol(symbol_format format, const ::halfplane::signal_set &set) noexcept;
+int items_per_symbol(symbol_format format, const ::halfplane::signal_set& set) noexcept;
 
 } // namespace gr::halfplane

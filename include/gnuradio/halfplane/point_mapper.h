@@ -28,7 +28,7 @@ public:
      * the label as a number), or `bits` (bytes, one bit a byte in its lowest bit, label_bits() a symbol,
      * leftmost bit first) \throws std::invalid_argument where `input` is none of these
      */
-    static sptr make(const ::halfplane::signal_set &set, const std::string &input = "indices");
+    static sptr make(const ::halfplane::signal_set& set, const std::string& input = "indices");
 };
 
 } // namespace gr::halfplane

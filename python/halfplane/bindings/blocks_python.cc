@@ -6,8 +6,10 @@ namespace py = pybind11;
 
 PYBIND11_MODULE(blocks_python, m)
 {
-    // The base classes of every block, and signal_set, are registered by these two.
+    // PMT, the base classes of every block, and signal_set are registered by these.
+    py::module::import("pmt");
     py::module::import("gnuradio.gr");
     py::module::import("gnuradio.halfplane.core_python");
     bind_point_mapper(m);
+    bind_report_pmt(m);
 }

@@ -9,15 +9,15 @@
 
 int main()
 {
-    const auto set = ::halfplane::signal_set::with_natural_labels({ { 3, 0 }, { 0, 1 }, { -3, 0 }, { 0, -1 } });
+    const auto set = ::halfplane::signal_set::with_natural_labels({{3, 0}, {0, 1}, {-3, 0}, {0, -1}});
     auto graph = gr::make_top_block("send");
-    auto source = gr::blocks::vector_source_s::make({ 3, 0, 1, 2 });
+    auto source = gr::blocks::vector_source_s::make({3, 0, 1, 2});
     auto mapper = gr::halfplane::point_mapper::make(set);
     auto sink = gr::blocks::vector_sink_c::make();
     graph->connect(source, 0, mapper, 0);
     graph->connect(mapper, 0, sink, 0);
     graph->run();
-    const std::vector<gr_complex> expected{ { 0, -1 }, { 3, 0 }, { 0, 1 }, { -3, 0 } };
+    const std::vector<gr_complex> expected{{0, -1}, {3, 0}, {0, 1}, {-3, 0}};
     std::cout << sink->data().size() << " samples\n";
     return sink->data() == expected ? 0 : 1;
 }

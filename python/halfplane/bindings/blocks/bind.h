@@ -4,4 +4,5 @@
 
 #include <pybind11/pybind11.h>
 
-void bind_point_mapper(pybind11::module &m);
+void bind_point_mapper(pybind11::module& m);
+void bind_report_pmt(pybind11::module& m);

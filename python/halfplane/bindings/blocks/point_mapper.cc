@@ -7,7 +7,7 @@
 namespace py = pybind11;
 using gr::halfplane::point_mapper;
 
-void bind_point_mapper(py::module &m)
+void bind_point_mapper(py::module& m)
 {
     py::class_<point_mapper,
                gr::sync_decimator,
