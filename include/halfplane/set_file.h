@@ -30,7 +30,8 @@ void write_set_csv(std::ostream& out, const signal_set& set);
 struct named_set_entry {
     std::string name;   ///< what to write as SET; families with an example of their parameters
     std::string about;  ///< one line
-    std::string source; ///< document and clause for `std:`, "own table" otherwise; says so where it stands from memory
+    std::string source; ///< document and clause for `std:`, "own table" otherwise; says so where it stands
+                        ///< from memory
 };
 /// Everything named_set() knows, in listing order.
 const std::vector<named_set_entry>& named_sets();

@@ -9,7 +9,7 @@ namespace halfplane::detail {
 
 /// The parts one after the other, numbers with ten significant digits.
 template <typename... Parts>
-std::string text_of(const Parts &...parts)
+std::string text_of(const Parts&... parts)
 {
     std::ostringstream text;
     text.precision(10);
@@ -19,7 +19,7 @@ std::string text_of(const Parts &...parts)
 
 /// Throws an Error whose message is text_of(parts…).
 template <typename Error, typename... Parts>
-[[noreturn]] void refuse(const Parts &...parts)
+[[noreturn]] void refuse(const Parts&... parts)
 {
     throw Error(text_of(parts...));
 }

@@ -50,8 +50,12 @@ void require_distinct(const std::vector<complex>& points, const std::vector<std:
 {
     for (std::size_t k = 1; k < order.size(); ++k)
         if (points[order[k]] == points[order[k - 1]])
-            refuse("point ", std::max(order[k], order[k - 1]), " equals point ",
-                   std::min(order[k], order[k - 1]), ": ", shown(points[order[k]]));
+            refuse("point ",
+                   std::max(order[k], order[k - 1]),
+                   " equals point ",
+                   std::min(order[k], order[k - 1]),
+                   ": ",
+                   shown(points[order[k]]));
 }
 
 /// Closest pair by divide and conquer over the points in order of their real part (Shamos and Hoey, 1975).
@@ -61,8 +65,9 @@ double closest_distance(const std::vector<complex>& points, const std::size_t* f
         double best = std::numeric_limits<double>::infinity();
         for (std::size_t a = 0; a < n; ++a)
             for (std::size_t b = a + 1; b < n; ++b)
-                best = std::min(best, std::hypot(points[first[a]].real() - points[first[b]].real(),
-                                                 points[first[a]].imag() - points[first[b]].imag()));
+                best = std::min(best,
+                                std::hypot(points[first[a]].real() - points[first[b]].real(),
+                                           points[first[a]].imag() - points[first[b]].imag()));
         return best;
     }
     const std::size_t half = n / 2;
@@ -95,12 +100,8 @@ signal_set::signal_set(std::vector<complex> points,
                        std::vector<double> priors,
                        std::string name,
                        std::string note)
-    : d_points(std::move(points)),
-      d_labels(std::move(labels)),
-      d_priors(std::move(priors)),
-      d_name(std::move(name)),
-      d_note(std::move(note)),
-      d_label_bits(label_bits)
+    : d_points(std::move(points)), d_labels(std::move(labels)), d_priors(std::move(priors)),
+      d_name(std::move(name)), d_note(std::move(note)), d_label_bits(label_bits)
 {
     const std::size_t m = d_points.size();
     if (m < min_size)
@@ -140,10 +141,14 @@ signal_set::signal_set(std::vector<complex> points,
     }
     if (std::abs(sum - 1) > prior_tolerance)
         refuse("priors must sum to 1 within ", prior_tolerance, ", they sum to ", sum);
-    d_uniform = d_uniform || std::all_of(d_priors.begin(), d_priors.end(),
-                                         [&](double p) { return p == d_priors.front(); });
+    d_uniform = d_uniform || std::all_of(d_priors.begin(), d_priors.end(), [&](double p) {
+                    return p == d_priors.front();
+                });
+    // What sums to 1 within rounding stays as it is, so that a written set reads back as the same numbers.
+    const double rounding = 4 * static_cast<double>(m) * std::numeric_limits<double>::epsilon();
+    const double divisor = std::abs(sum - 1) <= rounding ? 1 : sum;
     for (double& p : d_priors)
-        p = d_uniform ? 1.0 / static_cast<double>(m) : p / sum;
+        p = d_uniform ? 1.0 / static_cast<double>(m) : p / divisor;
 
     d_es = 0;
     d_mean = 0;
@@ -156,8 +161,7 @@ signal_set::signal_set(std::vector<complex> points,
     if (d_uniform)
         d_entropy = std::log2(static_cast<double>(m));
     if (!std::isfinite(d_es) || d_es < std::numeric_limits<double>::min())
-        refuse("the mean energy of the points leaves the range of a double: ", d_es,
-               "; scale the points");
+        refuse("the mean energy of the points leaves the range of a double: ", d_es, "; scale the points");
     d_d_min = closest_distance(d_points, order.data(), m);
 }
 
@@ -201,7 +205,12 @@ signal_set signal_set::scaled(complex factor) const
     auto points = d_points;
     for (auto& s : points)
         s *= factor;
-    return {std::move(points), d_labels, d_label_bits, d_uniform ? std::vector<double>{} : d_priors, d_name, d_note};
+    return {std::move(points),
+            d_labels,
+            d_label_bits,
+            d_uniform ? std::vector<double>{} : d_priors,
+            d_name,
+            d_note};
 }
 
 signal_set signal_set::translated(complex offset) const
@@ -209,12 +218,22 @@ signal_set signal_set::translated(complex offset) const
     auto points = d_points;
     for (auto& s : points)
         s += offset;
-    return {std::move(points), d_labels, d_label_bits, d_uniform ? std::vector<double>{} : d_priors, d_name, d_note};
+    return {std::move(points),
+            d_labels,
+            d_label_bits,
+            d_uniform ? std::vector<double>{} : d_priors,
+            d_name,
+            d_note};
 }
 
 signal_set signal_set::relabelled(std::vector<label_t> labels) const
 {
-    return {d_points, std::move(labels), d_label_bits, d_uniform ? std::vector<double>{} : d_priors, d_name, d_note};
+    return {d_points,
+            std::move(labels),
+            d_label_bits,
+            d_uniform ? std::vector<double>{} : d_priors,
+            d_name,
+            d_note};
 }
 
 signal_set signal_set::with_priors(std::vector<double> priors) const
@@ -224,7 +243,12 @@ signal_set signal_set::with_priors(std::vector<double> priors) const
 
 signal_set signal_set::renamed(std::string name, std::string note) const
 {
-    return {d_points, d_labels, d_label_bits, d_uniform ? std::vector<double>{} : d_priors, std::move(name), std::move(note)};
+    return {d_points,
+            d_labels,
+            d_label_bits,
+            d_uniform ? std::vector<double>{} : d_priors,
+            std::move(name),
+            std::move(note)};
 }
 
 } // namespace halfplane

@@ -27,7 +27,7 @@ std::string refusal(F f)
 {
     try {
         f();
-    } catch (const std::invalid_argument &e) {
+    } catch (const std::invalid_argument& e) {
         return e.what();
     }
     return "accepted";
@@ -38,7 +38,7 @@ std::string refusal(F f)
 TEST(Interval, BinomialEqualsItsDefinition)
 {
     double worst = 0;
-    for (const auto &row : binomial_rows) {
+    for (const auto& row : binomial_rows) {
         const auto got = binomial_interval(row.errors, row.trials, row.confidence);
         ASSERT_TRUE(got.low);
         worst = std::max({worst, relative(*got.low, row.low), relative(got.high, row.high)});
@@ -53,7 +53,7 @@ TEST(Interval, BinomialEqualsItsDefinition)
 TEST(Interval, ClumpedEqualsItsDefinition)
 {
     double worst = 0;
-    for (const auto &row : clumped_rows) {
+    for (const auto& row : clumped_rows) {
         const auto got = clumped_interval(row.errors, row.trials, row.dispersion, row.confidence);
         ASSERT_TRUE(got.low);
         worst = std::max({worst, relative(*got.low, row.low), relative(got.high, row.high)});

@@ -15,7 +15,10 @@ using halfplane::signal_set;
 
 namespace {
 
-std::string refusal(std::vector<complex> points, std::vector<label_t> labels, unsigned bits, std::vector<double> priors = {})
+std::string refusal(std::vector<complex> points,
+                    std::vector<label_t> labels,
+                    unsigned bits,
+                    std::vector<double> priors = {})
 {
     try {
         signal_set(std::move(points), std::move(labels), bits, std::move(priors));
@@ -62,7 +65,9 @@ TEST(SignalSet, PointsStayAsGivenAndScalingIsAskedFor)
 TEST(SignalSet, ClosestDistanceEqualsBruteForce)
 {
     std::uint64_t state = 5;
-    auto next = [&] { return static_cast<double>((state = state * 6364136223846793005u + 1442695040888963407u) >> 40); };
+    auto next = [&] {
+        return static_cast<double>((state = state * 6364136223846793005u + 1442695040888963407u) >> 40);
+    };
     for (std::size_t m : {2u, 3u, 4u, 7u, 33u, 500u}) {
         std::vector<complex> points(m);
         for (auto& p : points)
@@ -84,11 +89,16 @@ TEST(SignalSet, EveryRefusalNamesWhatAndWhere)
     EXPECT_EQ(refusal({{1, 0}, {2, 0}}, {1, 1}, 1), "points 0 and 1 share the label 1");
     EXPECT_EQ(refusal({{1, 0}, {2, 0}}, {0, 2}, 1), "label of point 1 has more than 1 bits: 2");
     EXPECT_EQ(refusal({{1, 0}, {2, 0}}, {0, 1}, 13), "labels have 1 to 12 bits, got 13");
-    EXPECT_EQ(refusal({{1, 0}, {2, 0}}, {0}, 1), "as many labels as points are needed: 1 labels for 2 points");
-    EXPECT_EQ(refusal({{1, 0}, {2, 0}}, {0, 1}, 1, {1.0, 0.0}), "prior of point 1 must be a positive number, got 0");
-    EXPECT_EQ(refusal({{1, 0}, {2, 0}}, {0, 1}, 1, {1.5, -0.5}), "prior of point 1 must be a positive number, got -0.5");
-    EXPECT_EQ(refusal({{1, 0}, {2, 0}}, {0, 1}, 1, {0.5, 0.25}), "priors must sum to 1 within 1e-06, they sum to 0.75");
-    EXPECT_EQ(refusal(std::vector<complex>(4097), std::vector<label_t>(4097), 12), "a set has at most 4096 points, got 4097");
+    EXPECT_EQ(refusal({{1, 0}, {2, 0}}, {0}, 1),
+              "as many labels as points are needed: 1 labels for 2 points");
+    EXPECT_EQ(refusal({{1, 0}, {2, 0}}, {0, 1}, 1, {1.0, 0.0}),
+              "prior of point 1 must be a positive number, got 0");
+    EXPECT_EQ(refusal({{1, 0}, {2, 0}}, {0, 1}, 1, {1.5, -0.5}),
+              "prior of point 1 must be a positive number, got -0.5");
+    EXPECT_EQ(refusal({{1, 0}, {2, 0}}, {0, 1}, 1, {0.5, 0.25}),
+              "priors must sum to 1 within 1e-06, they sum to 0.75");
+    EXPECT_EQ(refusal(std::vector<complex>(4097), std::vector<label_t>(4097), 12),
+              "a set has at most 4096 points, got 4097");
     EXPECT_NE(refusal({{1e-170, 0}, {-1e-170, 0}}, {0, 1}, 1).find("scale the points"), std::string::npos);
     EXPECT_NE(refusal({{1e170, 0}, {-1e170, 0}}, {0, 1}, 1).find("scale the points"), std::string::npos);
 }
