@@ -12,4 +12,5 @@ PYBIND11_MODULE(blocks_python, m)
     py::module::import("gnuradio.halfplane.core_python");
     bind_point_mapper(m);
     bind_report_pmt(m);
+    bind_test_pattern(m);
 }

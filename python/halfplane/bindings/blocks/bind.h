@@ -4,5 +4,11 @@
 
 #include <pybind11/pybind11.h>
 
+void bind_aligner(pybind11::module& m);
+void bind_link_log(pybind11::module& m);
+void bind_link_watch(pybind11::module& m);
+void bind_noise_at(pybind11::module& m);
+void bind_point_detector(pybind11::module& m);
 void bind_point_mapper(pybind11::module& m);
 void bind_report_pmt(pybind11::module& m);
+void bind_test_pattern(pybind11::module& m);
