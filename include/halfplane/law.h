@@ -4,36 +4,68 @@
 
 #include <memory>
 #include <string>
+#include <vector>
 
 namespace halfplane {
 
+/// One of finitely many states of a channel: its probability and its power gain (linear, > 0).
+struct channel_state {
+    double probability;
+    double gain;
+};
+
 /*!
- * T(u) = E[exp(−G·u)], G the random power gain of the channel with mean 1 a branch: the chance that noise of
- * unit energy crosses a line whose squared distance is u, before averaging over the angle. Perfect channel
- * knowledge at the detector.
+ * The law of the random power gain G ≥ 0 of a channel, given as its tail T(u) = E[exp(−G·u)]: what is left,
+ * on average, of the Gaussian factor exp(−r²/N0) at u = r²/N0. The detector knows the gain and decides by it,
+ * so under equal priors its decision cells stay where they are (Simon and Alouini, Digital Communication over
+ * Fading Channels, 2nd ed. 2005, chapter 5: the moment-generating-function approach).
+ *
+ * To add a law, derive a class, give it name() and tail(), and a line in parse_law(). ln_tail() is worth
+ * giving where the tail can fall below the smallest double; density() where unequal priors shall work too;
+ * states() instead of density() where the gain takes finitely many values.
  */
 class law
 {
 public:
     virtual ~law() = default;
-    /// Tail at u ≥ 0; T(0) = 1, falls with u, never negative.
-    virtual double tail(double u) const = 0;
+
     /// As the command line writes it: "awgn", "rician:6".
     virtual std::string name() const = 0;
-    /// True where the wedge of AWGN applies as it is (T(u) = exp(−u)).
-    virtual bool is_awgn() const { return false; }
+
+    /// T(u) at u ≥ 0: T(0) = 1, falls with u, never negative.
+    virtual double tail(double u) const = 0;
+
+    /// ln T(u). The default takes the logarithm of tail().
+    virtual double ln_tail(double u) const;
+
+    /*!
+     * Probability density of the gain of `branches` independent branches added up, at g > 0. Needed for MAP
+     * decisions under unequal priors only, where the thresholds move with the gain.
+     * \throws std::logic_error by default, naming the law
+     */
+    virtual double density(double g, unsigned branches) const;
+
+    /// The states where the gain takes finitely many values, by falling probability; empty otherwise.
+    virtual const std::vector<channel_state> &states() const;
+
+    /*!
+     * Why MAP decisions under unequal priors cannot be analysed under this law, or an empty string where they
+     * can.
+     */
+    virtual std::string map_refusal() const { return {}; }
 };
 
-/// T(u) = exp(−u).
+/// No fading: G = 1, T(u) = exp(−u).
 class awgn final : public law
 {
 public:
-    double tail(double u) const override;
     std::string name() const override { return "awgn"; }
-    bool is_awgn() const override { return true; }
+    double tail(double u) const override;
+    double ln_tail(double u) const override { return -u; }
+    const std::vector<channel_state> &states() const override;
 };
 
 /// A law from what a user writes (`awgn`, …). \throws std::invalid_argument naming what is not understood
-std::shared_ptr<const law> parse_law(const std::string& text);
+std::shared_ptr<const law> parse_law(const std::string &text);
 
 } // namespace halfplane
