@@ -22,8 +22,9 @@ def console(stream=None):
 def table(*columns, title=None):
     """An open table: a head, a rule, right-aligned figures. A column is its head, or (head, style)."""
     result = Table(
-        title=title, title_justify="left", title_style=STRONG, box=_RULE, pad_edge=False, header_style=STRONG, padding=(0, 1)
-    )
+        title=title, title_justify="left", title_style=STRONG, box=_RULE, show_edge=False, pad_edge=False,
+        header_style=STRONG, padding=(0, 1),
+    )  # fmt: skip
     for column in columns:
         head, style = (column, None) if isinstance(column, str) else column
         result.add_column(head, justify="right", style=style, no_wrap=True)
@@ -32,7 +33,10 @@ def table(*columns, title=None):
 
 def facts(pairs, title=None):
     """Name and value, two columns; pairs whose value is None are left out."""
-    result = Table(title=title, title_justify="left", title_style=STRONG, box=None, show_header=False, pad_edge=False, padding=(0, 2, 0, 0))
+    result = Table(
+        title=title, title_justify="left", title_style=STRONG, box=None, show_header=False, pad_edge=False,
+        padding=(0, 2, 0, 0),
+    )  # fmt: skip
     result.add_column(style=QUIET, no_wrap=True)
     result.add_column(overflow="fold")
     for name, value in pairs:
@@ -41,17 +45,17 @@ def facts(pairs, title=None):
     return result
 
 
-def rate(value, ln=None):
-    """An error rate, 4.32e-05; below the smallest double from its natural logarithm; a dash where not known."""
-    if value is not None and value >= 1e-300:
-        return f"{value:.3e}" if value < 0.1 or value >= 10 else f"{value:.4f}"
+def rate(value, ln=None, digits=3):
+    """An error rate, 4.321e-05; below the smallest double from its natural logarithm; a dash where not known."""
+    if value is not None and (value >= 1e-300 or ln is None):
+        return f"{value:.{digits}e}"
     if ln is None or not math.isfinite(ln):
-        return "–" if value is None else f"{value:.3e}"
+        return "–"
     exponent = math.floor(ln / math.log(10))
     mantissa = math.exp(ln - exponent * math.log(10))
-    if mantissa >= 9.9995:
+    if round(mantissa, digits) >= 10:
         mantissa, exponent = 1.0, exponent + 1
-    return f"{mantissa:.3f}e{exponent}"
+    return f"{mantissa:.{digits}f}e{exponent}"
 
 
 def db(value, digits=2):
@@ -61,13 +65,13 @@ def db(value, digits=2):
     return f"{round(value, digits) + 0.0:.{digits}f}"
 
 
-def span(low, high):
+def span(low, high, digits=3):
     """An interval of rates; only the upper end stands where no error was counted."""
     if high is None:
         return "–"
     if low is None:
-        return f"≤ {rate(high)}"
-    return f"{rate(low)} … {rate(high)}"
+        return f"≤ {rate(high, digits=digits)}"
+    return f"{rate(low, digits=digits)} … {rate(high, digits=digits)}"
 
 
 def count(value):

@@ -1,6 +1,7 @@
 # SPDX-License-Identifier: GPL-3.0-or-later
 """The look of every plot: colours that differ in lightness as well as hue, a line style a rung, units on the axes."""
 
+import functools
 import math
 from pathlib import Path
 
@@ -10,6 +11,7 @@ from matplotlib.figure import Figure
 from matplotlib.ticker import FuncFormatter, MaxNLocator, NullFormatter
 
 # Ink on paper. Told apart in greyscale and under the common colour deficiencies by lightness; by style in print.
+ES_N0, EB_N0 = "$E_\\mathrm{s}/N_0$", "$E_\\mathrm{b}/N_0$"
 INK, SOFT, GRID = "#22303c", "#6b7885", "#e3e7ea"
 RUNGS = {
     "exact": {"color": "#16425b", "linestyle": "-", "linewidth": 2.2, "label": "exact"},
@@ -18,7 +20,12 @@ RUNGS = {
     "nearest": {"color": "#4f9d8a", "linestyle": (0, (1.2, 1.6)), "linewidth": 1.9, "label": "nearest neighbours"},
 }
 BER_LABELS = {"facing": "facing (approximation)"}
-MEASURED = {"color": "#a4243b", "marker": "o", "markersize": 5, "linestyle": "none", "capsize": 3, "elinewidth": 1.3}
+# A measured point, at the Es/N0 ahead of the receiver or at the one gauged from the points that it decided on.
+MEASURED = {
+    "input": {"color": "#a4243b", "marker": "o"},
+    "decision": {"color": "#3a7d6d", "marker": "s", "markerfacecolor": "white"},
+}
+BARS = {"linestyle": "none", "markersize": 5.5, "capsize": 2.5, "elinewidth": 1.1, "markeredgewidth": 1.3}
 
 _SETTINGS = {
     "font.family": "DejaVu Sans",
@@ -39,7 +46,12 @@ _SETTINGS = {
     "xtick.labelcolor": INK,
     "ytick.labelcolor": INK,
     "text.color": INK,
-    "legend.frameon": False,
+    "legend.frameon": True,
+    "legend.edgecolor": "none",
+    "legend.framealpha": 0.9,
+    "legend.labelcolor": INK,
+    "errorbar.capsize": 2.5,
+    "lines.solid_capstyle": "round",
     "legend.handlelength": 3.2,
     "svg.hashsalt": "halfplane",
     "svg.fonttype": "path",
@@ -47,21 +59,39 @@ _SETTINGS = {
 }
 
 
+def styled(draw):
+    """Runs a drawing function under our settings; matplotlib reads some of them only when a thing is drawn."""
+
+    @functools.wraps(draw)
+    def drawn(*arguments, **options):
+        with matplotlib.rc_context(_SETTINGS):
+            return draw(*arguments, **options)
+
+    return drawn
+
+
 def figure(width, height, columns=1, **share):
     """An empty figure of our look, size in inches → (figure, list of axes)."""
-    with matplotlib.rc_context(_SETTINGS):
-        made = Figure(figsize=(width, height), layout="constrained", facecolor="white")
-        FigureCanvasAgg(made)
-        axes = made.subplots(1, columns, squeeze=False, **share)[0]
+    made = Figure(figsize=(width, height), layout="constrained", facecolor="white")
+    FigureCanvasAgg(made)
+    axes = made.subplots(1, columns, squeeze=False, **share)[0]
     return made, list(axes)
+
+
+def headline(made, text):
+    """The line at the top left: what is shown."""
+    made.suptitle(text, x=0.012, ha="left", color=INK, fontsize=11.5, fontweight="bold")
 
 
 def save(made, path):
     """Writes the figure in the format that the file's ending names. The same input gives the same bytes."""
     ending = Path(path).suffix.lower()
-    dateless = {".svg": {"Date": None, "Creator": "halfplane"}, ".pdf": {"CreationDate": None}, ".png": {"Software": "halfplane"}}
-    with matplotlib.rc_context(_SETTINGS):
-        made.savefig(path, dpi=160, metadata=dateless.get(ending))
+    dateless = {
+        ".svg": {"Date": None, "Creator": "halfplane"},
+        ".pdf": {"CreationDate": None},
+        ".png": {"Software": "halfplane"},
+    }
+    made.savefig(path, dpi=160, metadata=dateless.get(ending))
 
 
 def log_rate_axis(axes, lowest_ln, highest_ln=0.0):
