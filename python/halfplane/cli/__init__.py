@@ -56,30 +56,35 @@ def halfplane():
 
 
 def run(arguments=None):
-    """Runs the command line and ends the process; every refusal is one line on stderr and exit code 2."""
-    sys.exit(_run(arguments))
+    """Runs the command line `halfplane` and ends the process."""
+    run_command(halfplane, "halfplane", arguments)
 
 
-def _run(arguments):
+def run_command(command, name, arguments=None):
+    """Runs a click command and ends the process; every refusal is one line on stderr and exit code 2."""
+    sys.exit(_run(command, name, arguments))
+
+
+def _run(command, name, arguments):
     try:
-        result = halfplane.main(arguments, prog_name="halfplane", standalone_mode=False)
+        result = command.main(arguments, prog_name=name, standalone_mode=False)
         sys.stdout.flush()
         return result if isinstance(result, int) else DONE
     except click.exceptions.Exit as exit_:
         return exit_.exit_code
     except click.ClickException as refused:
-        return _refuse(refused.format_message(), getattr(refused, "ctx", None))
+        ctx = getattr(refused, "ctx", None)
+        return _refuse(refused.format_message(), ctx.command_path if ctx is not None else name)
     except (ValueError, OSError) as refused:
         if isinstance(refused, BrokenPipeError):
             sys.stderr.close()  # the reader of a pipe has gone; nothing is left to say
             return DONE
-        return _refuse(str(refused))
+        return _refuse(str(refused), name)
     except (KeyboardInterrupt, click.Abort):
-        print("halfplane: interrupted", file=sys.stderr)
+        print(f"{name}: interrupted", file=sys.stderr)
         return 130
 
 
-def _refuse(message, ctx=None):
-    where = ctx.command_path if ctx is not None else "halfplane"
+def _refuse(message, where):
     print(f"{where}: {' '.join(message.split())}", file=sys.stderr)
     return BAD_USAGE
