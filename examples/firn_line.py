@@ -38,10 +38,8 @@ def main(what, es_n0, errors, out):
     reports = run(signal_set, predictor, steps, errors, log)
     if not reports:
         raise click.ClickException("interrupted before the first window was judged")
-    console = shown.console()
-    console.print(live.steps_table(reports))
-    for path in [*draw(predictor, reports, out), log]:
-        console.print(f"written: {path}", style=shown.QUIET)
+    written = [*draw(predictor, reports, out), log]
+    shown.show(live.steps_table(reports), *(shown.quiet(f"written: {path}") for path in written))
 
 
 def suitable_steps(predictor):

@@ -12,7 +12,7 @@
 namespace halfplane::python {
 namespace {
 
-std::vector<complex> points_from(const complexes &points)
+std::vector<complex> points_from(const complexes& points)
 {
     if (points.ndim() != 1)
         throw invalid_set("points: expected one dimension, got " + std::to_string(points.ndim()));
@@ -32,11 +32,11 @@ struct labelling {
     unsigned bits;
 };
 
-labelling labels_from_strings(const std::vector<std::string> &texts)
+labelling labels_from_strings(const std::vector<std::string>& texts)
 {
     labelling result{{}, texts.empty() ? 1u : static_cast<unsigned>(texts.front().size())};
     for (std::size_t k = 0; k < texts.size(); ++k) {
-        const std::string &text = texts[k];
+        const std::string& text = texts[k];
         const auto where = "label of index " + std::to_string(k) + ": \"" + text + "\"";
         if (text.empty() || text.size() > signal_set::max_label_bits ||
             text.find_first_not_of("01") != std::string::npos)
@@ -49,7 +49,7 @@ labelling labels_from_strings(const std::vector<std::string> &texts)
     return result;
 }
 
-labelling labels_from(const py::object &labels, std::size_t size, unsigned label_bits)
+labelling labels_from(const py::object& labels, std::size_t size, unsigned label_bits)
 {
     if (labels.is_none()) {
         labelling natural{{}, label_bits ? label_bits : bits_for(size)};
@@ -71,7 +71,7 @@ labelling labels_from(const py::object &labels, std::size_t size, unsigned label
     return given;
 }
 
-std::vector<double> priors_from(const py::object &priors)
+std::vector<double> priors_from(const py::object& priors)
 {
     if (priors.is_none())
         return {};
@@ -79,12 +79,12 @@ std::vector<double> priors_from(const py::object &priors)
     return {values.data(), values.data() + values.size()};
 }
 
-signal_set make_set(const complexes &points,
-                    const py::object &labels,
+signal_set make_set(const complexes& points,
+                    const py::object& labels,
                     unsigned label_bits,
-                    const py::object &priors,
-                    const std::string &name,
-                    const std::string &note)
+                    const py::object& priors,
+                    const std::string& name,
+                    const std::string& note)
 {
     auto list = points_from(points);
     auto labelled = labels_from(labels, list.size(), label_bits);
@@ -92,7 +92,7 @@ signal_set make_set(const complexes &points,
         std::move(list), std::move(labelled.labels), labelled.bits, priors_from(priors), name, note);
 }
 
-std::string shown(const signal_set &set)
+std::string shown(const signal_set& set)
 {
     std::ostringstream out;
     out << "<signal_set " << (set.name().empty() ? "without a name" : set.name()) << ", " << set.size()
@@ -101,7 +101,7 @@ std::string shown(const signal_set &set)
     return out.str();
 }
 
-void bind_signal_set(py::module_ &m)
+void bind_signal_set(py::module_& m)
 {
     py::class_<signal_set, std::shared_ptr<signal_set>>(
         m, "signal_set", R"(A constellation: M points with distinct labels and priors. Immutable.
@@ -120,7 +120,7 @@ Raises invalid_set (a ValueError) naming the index and the value that is refused
              py::arg("note") = "")
         .def_static(
             "with_natural_labels",
-            [](const complexes &points, const std::string &name) {
+            [](const complexes& points, const std::string& name) {
                 return signal_set::with_natural_labels(points_from(points), name);
             },
             py::arg("points"),
@@ -128,15 +128,15 @@ Raises invalid_set (a ValueError) naming the index and the value that is refused
             "Labels that count up with the index, equal priors.")
         .def_property_readonly(
             "points",
-            [](const signal_set &s) { return array_of(s.points()); },
+            [](const signal_set& s) { return array_of(s.points()); },
             "M complex numbers, by index.")
         .def_property_readonly(
             "labels",
-            [](const signal_set &s) { return array_of(s.labels()); },
+            [](const signal_set& s) { return array_of(s.labels()); },
             "M labels as integers, by index.")
         .def_property_readonly(
             "label_strings",
-            [](const signal_set &s) {
+            [](const signal_set& s) {
                 std::vector<std::string> all;
                 for (std::size_t k = 0; k < s.size(); ++k)
                     all.push_back(s.label_string(k));
@@ -144,7 +144,7 @@ Raises invalid_set (a ValueError) naming the index and the value that is refused
             },
             "M labels as binary strings, leftmost bit first.")
         .def_property_readonly(
-            "priors", [](const signal_set &s) { return array_of(s.priors()); }, "M probabilities, by index.")
+            "priors", [](const signal_set& s) { return array_of(s.priors()); }, "M probabilities, by index.")
         .def_property_readonly("size", &signal_set::size, "M.")
         .def_property_readonly("label_bits", &signal_set::label_bits, "Bits of a label.")
         .def_property_readonly("name", &signal_set::name)
@@ -159,7 +159,7 @@ Raises invalid_set (a ValueError) naming the index and the value that is refused
         .def_property_readonly("d_min", &signal_set::d_min, "Smallest distance between two points.")
         .def(
             "label_string",
-            [](const signal_set &s, std::size_t index) {
+            [](const signal_set& s, std::size_t index) {
                 if (index >= s.size())
                     throw py::index_error("index " + std::to_string(index) + " of a set of " +
                                           std::to_string(s.size()));
@@ -169,7 +169,7 @@ Raises invalid_set (a ValueError) naming the index and the value that is refused
             "Label of a point as a binary string.")
         .def(
             "index_of_label",
-            [](const signal_set &s, const std::string &label) -> std::optional<int> {
+            [](const signal_set& s, const std::string& label) -> std::optional<int> {
                 const auto parsed = labels_from_strings({label});
                 const int index = parsed.bits == s.label_bits() ? s.index_of_label(parsed.labels[0]) : -1;
                 return index < 0 ? std::nullopt : std::optional<int>(index);
@@ -183,14 +183,14 @@ Raises invalid_set (a ValueError) naming the index and the value that is refused
              "Every point moved by a complex offset.")
         .def(
             "relabelled",
-            [](const signal_set &s, const py::object &labels) {
+            [](const signal_set& s, const py::object& labels) {
                 return s.relabelled(labels_from(labels, s.size(), s.label_bits()).labels);
             },
             py::arg("labels"),
             "The same points and priors under other labels.")
         .def(
             "with_priors",
-            [](const signal_set &s, const py::object &priors) { return s.with_priors(priors_from(priors)); },
+            [](const signal_set& s, const py::object& priors) { return s.with_priors(priors_from(priors)); },
             py::arg("priors"),
             "The same points and labels under other priors (None: equal).")
         .def("renamed", &signal_set::renamed, py::arg("name"), py::arg("note") = "")
@@ -200,7 +200,7 @@ Raises invalid_set (a ValueError) naming the index and the value that is refused
 
 } // namespace
 
-void bind_sets(py::module_ &m)
+void bind_sets(py::module_& m)
 {
     py::register_exception<invalid_set>(m, "invalid_set", PyExc_ValueError);
     bind_signal_set(m);

@@ -8,4 +8,5 @@ PYBIND11_MODULE(core_python, m)
         "The core of halfplane on numpy arrays: sets, predicted rates, intervals, tallies, gauges, patterns.";
     m.attr("__version__") = HALFPLANE_VERSION;
     halfplane::python::bind_sets(m);
+    halfplane::python::bind_set_files(m);
 }

@@ -62,6 +62,7 @@ def run(arguments=None):
 
 def run_command(command, name, arguments=None):
     """Runs a click command and ends the process; every refusal is one line on stderr and exit code 2."""
+    sys.stdout.reconfigure(errors="replace")  # a terminal that cannot show "≤" shows "?" and all the rest
     sys.exit(_run(command, name, arguments))
 
 

@@ -36,10 +36,8 @@ def command(what, es_n0, eb_n0, law, detector, plot, csv_file, as_json):
     if as_json:
         click.echo(documents.dumps(document))
         return
-    out = shown.console()
-    out.print(_table(document))
-    for path in filter(None, (plot, csv_file)):
-        out.print(f"written: {path}", style=shown.QUIET)
+    written = [shown.quiet(f"written: {path}") for path in (plot, csv_file) if path]
+    shown.show(_table(document), *written)
 
 
 def _table(document):

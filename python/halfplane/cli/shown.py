@@ -9,14 +9,30 @@ from rich.table import Table
 from rich.text import Text
 
 # One look for the whole project; the same roles as in plots.style, in terminal colours.
+PIPE_WIDTH = 160
 STRONG, QUIET, GOOD, BAD, WARN = "bold", "dim", "green", "red", "yellow"
 
 
 def console(stream=None):
     """A console that never colours a file or a pipe, and is wide enough there for any table."""
     stream = stream or sys.stdout
-    width = None if stream.isatty() else 160
-    return Console(file=stream, width=width, highlight=False, soft_wrap=False)
+    return Console(file=stream, width=None if stream.isatty() else PIPE_WIDTH, highlight=False)
+
+
+def show(*parts):
+    """Prints to stdout; into a file or a pipe without the blanks that fill a table's last column."""
+    out = console()
+    if out.is_terminal:
+        out.print(*parts, sep="\n")
+        return
+    with out.capture() as text:
+        out.print(*parts, sep="\n")
+    sys.stdout.write("".join(line.rstrip() + "\n" for line in text.get().splitlines()))
+
+
+def quiet(text):
+    """A remark below what was asked for."""
+    return Text(text, style=QUIET)
 
 
 def table(*columns, title=None):
