@@ -4,12 +4,11 @@
 
 #include "halfplane/signal_set.h"
 #include "halfplane/symbol_code.h"
+#include "halfplane/transition_counts.h"
 
 #include <array>
 #include <cstddef>
 #include <cstdint>
-#include <map>
-#include <utility>
 #include <vector>
 
 namespace halfplane {
@@ -21,25 +20,28 @@ namespace halfplane {
 class tally
 {
 public:
-    explicit tally(const signal_set& set);
+    explicit tally(const signal_set &set);
 
-    /// One judged symbol: sent and decided are indices below set.size().
-    void count(std::size_t sent, std::size_t decided);
+    /// `n` judged symbols: indices sent and decided, all below set.size() (not checked).
+    void count(const std::uint16_t *sent_index, const std::uint16_t *decided, std::size_t n);
+    /// One judged symbol.
+    void count(std::uint16_t sent_index, std::uint16_t decided) { count(&sent_index, &decided, 1); }
     void count_nonfinite() { ++nonfinite; }
     void count_excluded(exclusion cause) { ++excluded[-1 - static_cast<int>(cause)]; }
-    void merge(const tally& later);
+    void merge(const tally &later);
 
     std::uint64_t symbols = 0, symbol_errors = 0; ///< judged, and of these in error
     std::uint64_t bits = 0, bit_errors = 0;
     std::uint64_t bit_errors_squared = 0; ///< Σh² over erroneous symbols, h the wrong bits of one symbol
     std::uint64_t nonfinite = 0;          ///< NaN or Inf where a reference was known
     std::array<std::uint64_t, exclusion_count> excluded{}; ///< by cause, in the order of `exclusion`
-    std::vector<std::uint64_t> sent;      ///< judged symbols by index sent
-    std::vector<std::uint64_t> by_bit;    ///< bit errors by position, [0] the leftmost
-    std::map<std::pair<std::uint16_t, std::uint16_t>, std::uint64_t> transitions; ///< (sent, decided) → count, errors only
+    std::vector<std::uint64_t> sent;                       ///< judged symbols by index sent
+    std::vector<std::uint64_t> by_bit;                     ///< bit errors by position, [0] the leftmost
+    transition_counts transitions;                         ///< errors only
 
-    std::uint64_t accounted() const; ///< symbols + nonfinite + Σ excluded
-    /// D = Σh²/Σh (measurement of clumping of bit errors within symbols); 1 with no errors.
+    /// symbols + nonfinite + Σ excluded: every symbol that was ever handed in.
+    std::uint64_t accounted() const;
+    /// Σh²/Σh, how bit errors clump within symbols; 1 with no errors.
     double bit_dispersion() const;
 
 private:

@@ -1,0 +1,62 @@
+// SPDX-License-Identifier: GPL-3.0-or-later
+// tally: counting and merging.
+#include "halfplane/tally.h"
+
+#include <numeric>
+
+namespace halfplane {
+
+tally::tally(const signal_set &set)
+    : sent(set.size(), 0), by_bit(set.label_bits(), 0), transitions(set.size()), d_labels(set.labels()),
+      d_label_bits(set.label_bits())
+{
+}
+
+void tally::count(const std::uint16_t *sent_index, const std::uint16_t *decided, std::size_t n)
+{
+    for (std::size_t k = 0; k < n; ++k) {
+        const auto from = sent_index[k], to = decided[k];
+        ++sent[from];
+        if (from == to)
+            continue;
+        ++symbol_errors;
+        transitions.add(from, to);
+        const unsigned wrong = d_labels[from] ^ d_labels[to];
+        const auto h = static_cast<std::uint64_t>(label_distance(d_labels[from], d_labels[to]));
+        bit_errors += h;
+        bit_errors_squared += h * h;
+        for (unsigned bit = 0; bit < d_label_bits; ++bit)
+            by_bit[bit] += wrong >> (d_label_bits - 1 - bit) & 1;
+    }
+    symbols += n;
+    bits += std::uint64_t{n} * d_label_bits;
+}
+
+void tally::merge(const tally &later)
+{
+    symbols += later.symbols;
+    symbol_errors += later.symbol_errors;
+    bits += later.bits;
+    bit_errors += later.bit_errors;
+    bit_errors_squared += later.bit_errors_squared;
+    nonfinite += later.nonfinite;
+    for (std::size_t k = 0; k < excluded.size(); ++k)
+        excluded[k] += later.excluded[k];
+    for (std::size_t k = 0; k < sent.size(); ++k)
+        sent[k] += later.sent[k];
+    for (std::size_t k = 0; k < by_bit.size(); ++k)
+        by_bit[k] += later.by_bit[k];
+    transitions.merge(later.transitions);
+}
+
+std::uint64_t tally::accounted() const
+{
+    return std::accumulate(excluded.begin(), excluded.end(), symbols + nonfinite);
+}
+
+double tally::bit_dispersion() const
+{
+    return bit_errors == 0 ? 1 : static_cast<double>(bit_errors_squared) / static_cast<double>(bit_errors);
+}
+
+} // namespace halfplane
