@@ -1,0 +1,109 @@
+// SPDX-License-Identifier: GPL-3.0-or-later
+// log: whole lines by write, fdatasync, and truncation where a line did not fit.
+#include "halfplane/link/log.h"
+
+#include <fcntl.h>
+#include <sys/stat.h>
+#include <unistd.h>
+
+#include <cerrno>
+#include <system_error>
+
+namespace halfplane::link {
+
+namespace {
+
+/// Writes all or says how much of it: 0 and errno where even the first byte failed.
+std::size_t write_all(int file, const std::string &text)
+{
+    std::size_t done = 0;
+    while (done < text.size()) {
+        const auto n = ::write(file, text.data() + done, text.size() - done);
+        if (n > 0)
+            done += static_cast<std::size_t>(n);
+        else if (n < 0 && errno != EINTR)
+            break;
+    }
+    return done;
+}
+
+bool ends_within_a_line(int file, off_t size)
+{
+    char last = '\n';
+    return size > 0 && ::pread(file, &last, 1, size - 1) == 1 && last != '\n';
+}
+
+} // namespace
+
+report_log::report_log(std::string path) : d_path(std::move(path))
+{
+    if (!open())
+        d_failed = 0; // no line was lost yet
+}
+
+report_log::~report_log()
+{
+    close();
+}
+
+void report_log::close()
+{
+    if (d_file >= 0)
+        ::close(d_file);
+    d_file = -1;
+}
+
+bool report_log::fail(const char *doing, int error)
+{
+    d_error = d_path + ": " + doing + ": " + std::generic_category().message(error);
+    d_failing = true;
+    ++d_failed;
+    close();
+    return false;
+}
+
+bool report_log::open()
+{
+    // Reading is for the last byte only; a path that can only be written to (a device, a pipe) is opened
+    // without.
+    d_file = ::open(d_path.c_str(), O_RDWR | O_APPEND | O_CREAT | O_CLOEXEC, 0644);
+    if (d_file < 0 && (errno == EACCES || errno == ENXIO))
+        d_file = ::open(d_path.c_str(), O_WRONLY | O_APPEND | O_CREAT | O_CLOEXEC, 0644);
+    if (d_file < 0)
+        return fail("cannot be opened", errno);
+    struct stat about {
+    };
+    d_torn =
+        ::fstat(d_file, &about) == 0 && S_ISREG(about.st_mode) && ends_within_a_line(d_file, about.st_size);
+    return true;
+}
+
+bool report_log::write(const report &line)
+{
+    if (d_file < 0 && !open())
+        return false;
+    std::string text = line.dump();
+    text += '\n';
+    if (d_torn)
+        text.insert(text.begin(), '\n');
+
+    struct stat before {
+    };
+    const bool regular = ::fstat(d_file, &before) == 0 && S_ISREG(before.st_mode);
+    const std::size_t done = write_all(d_file, text);
+    const int error = errno;
+    if (done < text.size()) {
+        if (done > 0 && regular && ::ftruncate(d_file, before.st_size) != 0)
+            return fail("a part of a line could not be taken back", errno); // closed off when opened again
+        return fail("cannot be written", error);
+    }
+    d_torn = false;
+    // EINVAL and EROFS: the file is of a kind that has nothing to synchronise.
+    if (::fdatasync(d_file) != 0 && errno != EINVAL && errno != EROFS)
+        return fail("cannot be brought to disk", errno);
+    ++d_written;
+    d_failing = false;
+    return true;
+}
+
+} // namespace halfplane::link
