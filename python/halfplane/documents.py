@@ -3,6 +3,7 @@
 
 import json
 import math
+import re
 
 import numpy as np
 
@@ -12,8 +13,9 @@ RUNGS = ("exact", "facing", "union", "nearest")
 
 
 def dumps(document):
-    """One JSON document; refuses what JSON has no word for."""
-    return json.dumps(document, indent=2, allow_nan=False)
+    """One JSON document, a list of plain values on one line; refuses what JSON has no word for."""
+    text = json.dumps(document, indent=2, allow_nan=False, ensure_ascii=False)
+    return re.sub(r"\[\n\s+([^\[\]{}]*?)\n\s+\]", lambda found: "[" + re.sub(r",\n\s+", ", ", found[1]) + "]", text)
 
 
 def eb_n0_db(signal_set, es_n0_db):
@@ -59,3 +61,32 @@ def curve_rows(predictor, es_n0_db):
             row["exact"]["ser_by_point"] = by_point.tolist()
         rows.append(row)
     return rows
+
+
+def inspect(signal_set):
+    """The facts of a constellation."""
+    facts = {
+        "name": signal_set.name,
+        "size": signal_set.size,
+        "label_bits": signal_set.label_bits,
+        "entropy_bits": signal_set.entropy_bits,
+        "es": signal_set.es,
+        "eb": signal_set.eb,
+        "mean_i": signal_set.mean.real,
+        "mean_q": signal_set.mean.imag,
+        "papr_db": signal_set.papr_db,
+        "d_min": signal_set.d_min,
+    }
+    if not facts["name"]:
+        del facts["name"]
+    return facts
+
+
+def curve(predictor, es_n0_db):
+    """Every rung of a predictor at every Es/N0 (a sequence of dB)."""
+    return {
+        "set": inspect(predictor.set),
+        "law": predictor.law,
+        "detector": predictor.detector,
+        "rows": curve_rows(predictor, es_n0_db),
+    }

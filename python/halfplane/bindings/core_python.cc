@@ -9,4 +9,5 @@ PYBIND11_MODULE(core_python, m)
     m.attr("__version__") = HALFPLANE_VERSION;
     halfplane::python::bind_sets(m);
     halfplane::python::bind_set_files(m);
+    halfplane::python::bind_rates(m);
 }

@@ -42,12 +42,13 @@ def command(what, es_n0, eb_n0, law, detector, plot, csv_file, as_json):
 
 def _table(document):
     facts = document["set"]
-    title = f"{facts['name'] or 'set'}: {facts['size']} points, {document['law']}, {document['detector']} detector"
+    name = facts.get("name", "a set without a name")
+    title = f"{name}: {facts['size']} points, {document['law']}, {document['detector']} detector"
     rows = document["rows"]
     known = [key for key in ("mi", "bmd_rate") if any(key in row.get("information", {}) for row in rows)]
     result = shown.table(
-        "Es/N0 dB", "Eb/N0 dB", ("SER exact", shown.STRONG), "facing ≥", "union ≥", "nearest ≈",
-        ("BER exact", shown.STRONG), "union ≥", *({"mi": "MI bit", "bmd_rate": "BMD bit"}[key] for key in known), title=title,
+        "Es/N0 dB", "Eb/N0 dB", ("SER exact", shown.STRONG), "≤ facing", "≤ union", "≈ nearest",
+        ("BER exact", shown.STRONG), "≤ union", *({"mi": "MI bit", "bmd_rate": "BMD bit"}[key] for key in known), title=title,
     )  # fmt: skip
     for row in rows:
         cells = [shown.db(row["es_n0_db"]), shown.db(row["eb_n0_db"])]

@@ -30,7 +30,7 @@ def rungs(axes, rows, kind):
     """The four rungs of one rate, on an axis of log10(rate)."""
     x = [row["es_n0_db"] for row in rows]
     marker = "o" if len(rows) == 1 else None
-    for rung in ("union", "facing", "nearest", "exact"):
+    for rung in ("exact", "union", "facing", "nearest"):
         look = dict(style.RUNGS[rung])
         if kind == "ber":
             look["label"] = style.BER_LABELS.get(rung, look["label"])
@@ -45,7 +45,7 @@ def in_order(axes):
     """Handles and labels for a legend: the exact rate first, then the bounds, then what was measured."""
     handles, labels = axes.get_legend_handles_labels()
     drawn = len(style.RUNGS)
-    order = [3, 1, 0, 2, *range(drawn, len(labels))]
+    order = [0, 2, 1, 3, *range(drawn, len(labels))]
     return [handles[k] for k in order], [labels[k] for k in order]
 
 

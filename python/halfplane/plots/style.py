@@ -14,9 +14,9 @@ from matplotlib.ticker import FuncFormatter, MaxNLocator, NullFormatter
 ES_N0, EB_N0 = "$E_\\mathrm{s}/N_0$", "$E_\\mathrm{b}/N_0$"
 INK, SOFT, GRID = "#22303c", "#6b7885", "#e3e7ea"
 RUNGS = {
-    "exact": {"color": "#16425b", "linestyle": "-", "linewidth": 2.2, "label": "exact"},
-    "facing": {"color": "#d1801f", "linestyle": (0, (6, 2)), "linewidth": 1.6, "label": "facing bound"},
-    "union": {"color": "#8f9aa5", "linestyle": (0, (7, 2, 1.2, 2)), "linewidth": 1.6, "label": "union bound"},
+    "exact": {"color": "#16425b", "linestyle": "-", "linewidth": 2.8, "label": "exact"},
+    "facing": {"color": "#d1801f", "linestyle": (0, (6, 2)), "linewidth": 1.4, "label": "facing bound"},
+    "union": {"color": "#8f9aa5", "linestyle": (0, (7, 2, 1.2, 2)), "linewidth": 1.4, "label": "union bound"},
     "nearest": {"color": "#4f9d8a", "linestyle": (0, (1.2, 1.6)), "linewidth": 1.9, "label": "nearest neighbours"},
 }
 BER_LABELS = {"facing": "facing (approximation)"}

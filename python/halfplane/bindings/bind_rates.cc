@@ -1,0 +1,228 @@
+// SPDX-License-Identifier: GPL-3.0-or-later
+// Bindings of the predictor: rates of every rung, vectorised over Es/N0 in dB.
+#include "topics.h"
+
+#include "halfplane/rates.h"
+
+#include <pybind11/stl.h>
+
+#include <algorithm>
+
+namespace halfplane::python {
+namespace {
+
+double linear(double es_n0_db)
+{
+    return from_db(es_n0_db);
+}
+
+/// The four figures of one rung, each in the shape of the Es/N0 that were asked for.
+class rung_arrays
+{
+public:
+    explicit rung_arrays(const doubles& es_n0_db)
+        : d_ser(shape_of(es_n0_db)), d_ber(shape_of(es_n0_db)), d_ln_ser(shape_of(es_n0_db)),
+          d_ln_ber(shape_of(es_n0_db)), d_ber_if_gray(shape_of(es_n0_db)), d_at{d_ser.mutable_data(),
+                                                                                d_ber.mutable_data(),
+                                                                                d_ln_ser.mutable_data(),
+                                                                                d_ln_ber.mutable_data(),
+                                                                                d_ber_if_gray.mutable_data()}
+    {
+    }
+
+    void set(std::size_t k, const rung& r)
+    {
+        d_at[0][k] = r.ser;
+        d_at[1][k] = r.ber;
+        d_at[2][k] = r.ln_ser;
+        d_at[3][k] = r.ln_ber;
+        d_at[4][k] = r.ber_if_gray;
+    }
+
+    py::dict dict()
+    {
+        py::dict out;
+        out["ser"] = number_or_array(d_ser);
+        out["ber"] = number_or_array(d_ber);
+        out["ln_ser"] = number_or_array(d_ln_ser);
+        out["ln_ber"] = number_or_array(d_ln_ber);
+        out["ber_if_gray"] = number_or_array(d_ber_if_gray);
+        return out;
+    }
+
+private:
+    py::array_t<double> d_ser, d_ber, d_ln_ser, d_ln_ber, d_ber_if_gray;
+    double* d_at[5];
+};
+
+py::dict rates_over(const predictor& p, const doubles& es_n0_db)
+{
+    const auto size = static_cast<py::ssize_t>(p.set().size());
+    const auto bits = static_cast<py::ssize_t>(p.set().label_bits());
+    rung_arrays exact(es_n0_db), facing(es_n0_db), union_bound(es_n0_db), nearest(es_n0_db);
+    py::array_t<double> by_point(shape_of(es_n0_db, {size})), by_bit(shape_of(es_n0_db, {bits}));
+    double* point_out = by_point.mutable_data();
+    double* bit_out = by_bit.mutable_data();
+    const double* in = es_n0_db.data();
+    const auto count = static_cast<std::size_t>(es_n0_db.size());
+    {
+        py::gil_scoped_release free;
+        for (std::size_t k = 0; k < count; ++k) {
+            const rates r = p.at(linear(in[k]));
+            exact.set(k, r.exact);
+            facing.set(k, r.facing);
+            union_bound.set(k, r.union_bound);
+            nearest.set(k, r.nearest);
+            std::copy(r.exact.ser_by_point.begin(), r.exact.ser_by_point.end(), point_out + k * size);
+            std::copy(r.exact.ber_by_bit.begin(), r.exact.ber_by_bit.end(), bit_out + k * bits);
+        }
+    }
+    py::dict out;
+    out["exact"] = exact.dict();
+    out["exact"]["ser_by_point"] = by_point;
+    out["exact"]["ber_by_bit"] = by_bit;
+    out["facing"] = facing.dict();
+    out["union"] = union_bound.dict();
+    out["nearest"] = nearest.dict();
+    return out;
+}
+
+py::array_t<double> transitions_over(const predictor& p, const doubles& es_n0_db)
+{
+    const auto size = static_cast<py::ssize_t>(p.set().size());
+    py::array_t<double> out(shape_of(es_n0_db, {size, size}));
+    double* to = out.mutable_data();
+    const double* in = es_n0_db.data();
+    const auto count = static_cast<std::size_t>(es_n0_db.size());
+    py::gil_scoped_release free;
+    for (std::size_t k = 0; k < count; ++k)
+        for (py::ssize_t i = 0; i < size; ++i) {
+            const auto row = p.transition_row(linear(in[k]), static_cast<std::size_t>(i));
+            to = std::copy(row.begin(), row.end(), to);
+        }
+    return out;
+}
+
+/// Es/N0 in dB for a target rate; an error where one cannot be reached, which is better than a number that is
+/// none.
+template <typename Solve>
+py::object inverse_over(const doubles& target, const char* what, Solve solve)
+{
+    return over(target, [&](double rate) {
+        const auto found = solve(rate);
+        if (!found)
+            throw std::invalid_argument(std::string(what) + " " + std::to_string(rate) +
+                                        " cannot be reached between -60 dB and 200 dB");
+        return to_db(*found);
+    });
+}
+
+using rate_at = double (predictor::*)(double, rung_name) const;
+
+template <rate_at Rate>
+py::object rate_over(const predictor& p, const doubles& es_n0_db, const std::string& rung)
+{
+    const rung_name name = parse_rung(rung);
+    return over(es_n0_db, [&](double db) { return (p.*Rate)(linear(db), name); });
+}
+
+void check_index(const predictor& p, std::size_t index)
+{
+    if (index >= p.set().size())
+        throw py::index_error("index " + std::to_string(index) + " of a set of " +
+                              std::to_string(p.set().size()));
+}
+
+} // namespace
+
+void bind_rates(py::module_& m)
+{
+    py::class_<predictor>(
+        m, "predictor", R"(Predicted error rates of one set under one channel law and detector.
+
+set: a signal_set. law: as the command line writes it ("awgn", "rayleigh", "rician:6", …).
+detector: "map", "ml" or "automatic" (MAP where the priors differ, nearest point otherwise).
+rung, wherever it is asked for: "exact", "facing", "union" or "nearest".
+Es/N0 is in dB, a number or an array of any shape; rates come back in that shape. Raises ValueError where a law, a
+detector, a rung or an Es/N0 is refused.)")
+        .def(py::init([](const signal_set& set, const std::string& law, const std::string& rule) {
+                 return std::make_unique<predictor>(set, parse_law(law), parse_detector(rule));
+             }),
+             py::arg("set"),
+             py::arg("law") = "awgn",
+             py::arg("detector") = "automatic")
+        .def_property_readonly("set", &predictor::set)
+        .def_property_readonly("law", [](const predictor& p) { return p.channel().name(); })
+        .def_property_readonly(
+            "detector",
+            [](const predictor& p) { return p.rule() == detector::map ? "map" : "ml"; },
+            "\"map\" or \"ml\", never \"automatic\".")
+        .def("ser",
+             &rate_over<&predictor::ser>,
+             py::arg("es_n0_db"),
+             py::arg("rung") = "exact",
+             "Symbol error rate.")
+        .def("ber",
+             &rate_over<&predictor::ber>,
+             py::arg("es_n0_db"),
+             py::arg("rung") = "exact",
+             "Bit error rate.")
+        .def("ln_ser",
+             &rate_over<&predictor::ln_ser>,
+             py::arg("es_n0_db"),
+             py::arg("rung") = "exact",
+             "Natural logarithm of the symbol error rate; holds where the rate itself is below the smallest "
+             "double.")
+        .def("ln_ber",
+             &rate_over<&predictor::ln_ber>,
+             py::arg("es_n0_db"),
+             py::arg("rung") = "exact",
+             "Natural logarithm of the bit error rate.")
+        .def("rates", &rates_over, py::arg("es_n0_db"), R"(All rungs at once, as a dict of dicts of arrays:
+exact, facing, union, nearest, each with ser, ber, ln_ser, ln_ber, ber_if_gray in the shape of es_n0_db; exact also with
+ser_by_point (one more dimension of M, by index) and ber_by_bit (one more of label_bits, the leftmost bit first).)")
+        .def("transitions",
+             &transitions_over,
+             py::arg("es_n0_db"),
+             "P(decided j | sent i) as [..., i, j], two more dimensions than es_n0_db; each row sums to 1.")
+        .def(
+            "transition_row",
+            [](const predictor& p, double es_n0_db, std::size_t index) {
+                check_index(p, index);
+                return array_of(p.transition_row(linear(es_n0_db), index));
+            },
+            py::arg("es_n0_db"),
+            py::arg("index"),
+            "P(decided j | sent index) for all j.")
+        .def(
+            "facing",
+            [](const predictor& p, double es_n0_db) {
+                std::vector<std::vector<std::size_t>> all;
+                for (std::size_t i = 0; i < p.set().size(); ++i)
+                    all.push_back(p.facing(linear(es_n0_db), i));
+                return all;
+            },
+            py::arg("es_n0_db") = 0.0,
+            "By point, the indices that it faces. Depends on Es/N0 with unequal priors only.")
+        .def(
+            "es_n0_db_for_ser",
+            [](const predictor& p, const doubles& target, const std::string& rung) {
+                const auto name = parse_rung(rung);
+                return inverse_over(target, "SER", [&](double t) { return p.es_n0_for_ser(t, name); });
+            },
+            py::arg("target"),
+            py::arg("rung") = "exact",
+            "Es/N0 in dB beyond which the rung stays at or below the target. ValueError where that is "
+            "nowhere.")
+        .def(
+            "es_n0_db_for_ber",
+            [](const predictor& p, const doubles& target, const std::string& rung) {
+                const auto name = parse_rung(rung);
+                return inverse_over(target, "BER", [&](double t) { return p.es_n0_for_ber(t, name); });
+            },
+            py::arg("target"),
+            py::arg("rung") = "exact",
+            "The same for the bit error rate.");
+}
+
+} // namespace halfplane::python
