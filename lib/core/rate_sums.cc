@@ -4,6 +4,7 @@
 
 #include <algorithm>
 #include <cmath>
+#include <limits>
 
 namespace halfplane {
 
@@ -55,10 +56,33 @@ const ser_ber &rate_sums::of(rung_name r) const
     }
 }
 
-void rate_sums::add(double weight, const rate_sums &other)
+double rate_sums::magnitude() const
 {
-    const bool first = by_point.empty() && by_bit.empty() && exact.ser == 0 && facing.ser == 0 &&
-                       union_bound.ser == 0 && nearest.ser == 0 && exact.ber == 0;
+    double sum = 0;
+    for (const auto* r : {&exact, &facing, &union_bound, &nearest})
+        sum += r->ser + r->ber;
+    return sum;
+}
+
+double rate_sums::least() const
+{
+    double smallest = std::numeric_limits<double>::infinity();
+    const auto consider = [&](double x) {
+        if (x > 0)
+            smallest = std::min(smallest, x);
+    };
+    for (const auto* r : {&exact, &facing, &union_bound, &nearest}) {
+        consider(r->ser);
+        consider(r->ber);
+    }
+    std::for_each(by_point.begin(), by_point.end(), consider);
+    std::for_each(by_bit.begin(), by_bit.end(), consider);
+    return smallest;
+}
+
+void rate_sums::add(double weight, const rate_sums& other)
+{
+    const bool first = magnitude() == 0;
     const double scale = first ? other.ln_scale : std::max(ln_scale, other.ln_scale);
     const double old_factor = first ? 0 : std::exp(ln_scale - scale);
     const double factor = weight * std::exp(other.ln_scale - scale);

@@ -86,4 +86,29 @@ std::optional<double> predictor::es_n0_for_ber(double target, rung_name r) const
     return safe ? largest_crossing(f, ln_target, *safe) : std::nullopt;
 }
 
+namespace {
+
+/// Central difference of f at x, extrapolated once (Richardson): the error falls with the fourth power.
+double slope(const std::function<double(double)>& f, double x)
+{
+    constexpr double step = 0.02;
+    const double wide = (f(x + step) - f(x - step)) / (2 * step);
+    const double fine = (f(x + step / 2) - f(x - step / 2)) / step;
+    return fine + (fine - wide) / 3;
+}
+
+constexpr double ln_10 = 2.302585092994045684;
+
+} // namespace
+
+double predictor::ser_decades_per_db(double es_n0, rung_name r) const
+{
+    return slope([&](double db) { return ln_ser(from_db(db), r) / ln_10; }, to_db(es_n0));
+}
+
+double predictor::ber_decades_per_db(double es_n0, rung_name r) const
+{
+    return slope([&](double db) { return ln_ber(from_db(db), r) / ln_10; }, to_db(es_n0));
+}
+
 } // namespace halfplane

@@ -94,7 +94,7 @@ void exact_ser(const scene &s, const scaled_wedge &w, rate_sums &out)
 {
     out.by_point.assign(s.set->size(), 0);
     std::vector<double> sent_weight(s.set->size(), 0);
-    if (s.undisplaced && s.weights.empty()) {
+    if (s.undisplaced && s.weights.empty() && !s.whiten) {
         // Both sides see an edge alike.
         for (const auto &e : s.regions->edges()) {
             const double p = w(e.seen_from(e.origin));
@@ -147,18 +147,26 @@ void exact_ber(const scene &s, const scaled_wedge &w, rate_sums &out)
 }
 
 /// Probability that i sent looks less likely than j, in scaled units.
-double pairwise(const scene &s, const scaled_wedge &w, std::size_t i, std::size_t j)
+double pairwise(const scene& s, const scaled_wedge& w, std::size_t i, std::size_t j)
 {
-    const double d = std::abs(s.set->points()[j] - s.set->points()[i]);
-    if (s.weights.empty())
-        return w.half_plane(d / 2);
-    return w.half_plane(d / 2 + (s.weights[i] - s.weights[j]) / (2 * d));
+    const complex apart = s.set->points()[j] - s.set->points()[i];
+    const double d = std::abs(apart);
+    double h = d / 2;
+    if (!s.weights.empty())
+        h += (s.weights[i] - s.weights[j]) / (2 * d);
+    if (s.whiten) { // the line's distance after the map: divided by the length of the mapped normal
+        const auto& a = *s.whiten;
+        const complex n = apart / d;
+        h *= std::abs(a[0] * a[3] - a[1] * a[2]) /
+             std::hypot(a[3] * n.real() - a[2] * n.imag(), a[0] * n.imag() - a[1] * n.real());
+    }
+    return w.half_plane(h);
 }
 
 void add_pair(const scene &s, const scaled_wedge &w, std::size_t i, std::size_t j, ser_ber &sum)
 {
     const auto &prior = s.set->priors();
-    const double p = s.weights.empty() ? (prior[i] + prior[j]) * pairwise(s, w, i, j)
+    const double p = s.weights.empty() && !s.whiten ? (prior[i] + prior[j]) * pairwise(s, w, i, j)
                                        : prior[i] * pairwise(s, w, i, j) + prior[j] * pairwise(s, w, j, i);
     sum.ser += p;
     sum.ber += p * label_distance(s.set->labels()[i], s.set->labels()[j]) / s.set->label_bits();
@@ -212,7 +220,7 @@ rate_sums evaluate(const scene &s, const noise &n, unsigned parts)
     return out;
 }
 
-std::vector<double> transitions(const scene &s, const noise &n, const arrival &from)
+std::vector<double> transition_masses(const scene &s, const noise &n, const arrival &from)
 {
     const scaled_wedge w(n, 0);
     std::vector<double> p(s.set->size(), 0);

@@ -34,14 +34,15 @@ struct scene {
     const cells *regions;
     const std::vector<wall> *walls;
     std::vector<arrival> arrivals;
-    std::vector<double> weights; ///< w_i of the power diagram, empty where all are equal
-    bool undisplaced = true;     ///< one arrival a point, at the point itself
+    std::vector<double> weights;     ///< w_i of the power diagram, empty where all are equal
+    const matrix2* whiten = nullptr; ///< from the set's plane to this one, null where they are the same
+    bool undisplaced = true;         ///< one arrival a point, at the point itself
 };
 
 /// All asked figures of a scene.
 rate_sums evaluate(const scene &where, const noise &what, unsigned parts);
 
 /// P(j | arrival) for all j.
-std::vector<double> transitions(const scene &where, const noise &what, const arrival &from);
+std::vector<double> transition_masses(const scene &where, const noise &what, const arrival &from);
 
 } // namespace halfplane
