@@ -56,14 +56,14 @@ public:
 
     /// \param points  2 … 4096 distinct points of magnitude up to about 1 (scale first)
     /// \param weights as many, in the square of the points' unit, or empty
-    explicit cells(const std::vector<complex> &points, const std::vector<double> &weights = {});
+    explicit cells(const std::vector<complex>& points, const std::vector<double>& weights = {});
 
     std::size_t size() const noexcept { return d_first.size() - 1; }
-    const std::vector<edge> &edges() const noexcept { return d_edges; }
+    const std::vector<edge>& edges() const noexcept { return d_edges; }
 
     /// Numbers of the edges of cell i.
-    const std::uint32_t *begin_of(std::size_t i) const noexcept { return d_of_cell.data() + d_first[i]; }
-    const std::uint32_t *end_of(std::size_t i) const noexcept { return d_of_cell.data() + d_first[i + 1]; }
+    const std::uint32_t* begin_of(std::size_t i) const noexcept { return d_of_cell.data() + d_first[i]; }
+    const std::uint32_t* end_of(std::size_t i) const noexcept { return d_of_cell.data() + d_first[i + 1]; }
 
     bool empty(std::size_t i) const noexcept { return d_empty[i]; }
     /// Points whose cells share an edge with cell i, ascending. A point with an empty cell faces all others.
@@ -75,7 +75,7 @@ public:
 
     /// The same cells after y → A·y, for noise that is circular only then. owner() still takes y before the
     /// map.
-    cells mapped(const matrix2 &a) const;
+    cells mapped(const matrix2& a) const;
 
 private:
     std::vector<complex> d_points;

@@ -46,7 +46,7 @@ public:
     virtual double density(double g, unsigned branches) const;
 
     /// The states where the gain takes finitely many values, the likeliest first; empty otherwise.
-    virtual const std::vector<channel_state> &states() const;
+    virtual const std::vector<channel_state>& states() const;
 
     /*!
      * Why MAP decisions under unequal priors cannot be analysed under this law, or an empty string where they
@@ -62,7 +62,7 @@ public:
     std::string name() const override { return "awgn"; }
     double tail(double u) const override;
     double ln_tail(double u) const override { return -u; }
-    const std::vector<channel_state> &states() const override;
+    const std::vector<channel_state>& states() const override;
 };
 
 /*!
@@ -120,7 +120,8 @@ private:
 class mixture : public law
 {
 public:
-    /// \throws std::invalid_argument unless probabilities are positive and sum to 1 within 1e-9, gains positive
+    /// \throws std::invalid_argument unless probabilities are positive and sum to 1 within 1e-9, gains
+    /// positive
     explicit mixture(std::vector<channel_state> states, std::string name = "mixture");
     std::string name() const override { return d_name; }
     double tail(double u) const override;
@@ -134,8 +135,8 @@ private:
 
 /*!
  * Impulsive noise, class A of Middleton (IEEE Trans. Electromagn. Compat. 19 (1977) 106): the noise power is
- * σ_k² = (k/A + Γ)/(1 + Γ) times its mean with probability exp(−A)·A^k/k!. N0 is the total; the detector does not
- * know k and decides by the nearest point, which equal priors make right.
+ * σ_k² = (k/A + Γ)/(1 + Γ) times its mean with probability exp(−A)·A^k/k!. N0 is the total; the detector does
+ * not know k and decides by the nearest point, which equal priors make right.
  */
 class impulsive final : public mixture
 {
@@ -173,9 +174,8 @@ private:
 };
 
 /*!
- * A law from what a user writes: `awgn`, `rayleigh`, `rician:K_DB`, `nakagami:M`, `impulsive:A:GAMMA`, any but
- * the last with `*L` for L branches.
- * \throws std::invalid_argument naming what is not understood
+ * A law from what a user writes: `awgn`, `rayleigh`, `rician:K_DB`, `nakagami:M`, `impulsive:A:GAMMA`, any
+ * but the last with `*L` for L branches. \throws std::invalid_argument naming what is not understood
  */
 std::shared_ptr<const law> parse_law(const std::string& text);
 

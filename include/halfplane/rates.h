@@ -15,8 +15,8 @@
 
 namespace halfplane {
 
-/// Relative errors promised of SER and BER, and proved in the tests down to 1e-290. Coordinates and Es/N0 count
-/// as exact: their own rounding moves ln P by up to 2·|ln P| times their relative error.
+/// Relative errors promised of SER and BER, and proved in the tests down to 1e-290. Coordinates and Es/N0
+/// count as exact: their own rounding moves ln P by up to 2·|ln P| times their relative error.
 constexpr double rate_accuracy = 1e-12;        ///< equal priors or nearest point, AWGN
 constexpr double map_rate_accuracy = 1e-11;    ///< MAP under unequal priors, AWGN
 constexpr double fading_rate_accuracy = 1e-11; ///< fading laws, cells that stay
@@ -31,8 +31,8 @@ constexpr double ln_rate_accuracy = 1e-9;
 enum class detector { automatic, map, ml };
 enum class rung_name { exact, facing, union_bound, nearest };
 
-detector parse_detector(const std::string& text);  ///< "map", "ml", "automatic"
-rung_name parse_rung(const std::string& text);     ///< "exact", "facing", "union", "nearest"
+detector parse_detector(const std::string& text); ///< "map", "ml", "automatic"
+rung_name parse_rung(const std::string& text);    ///< "exact", "facing", "union", "nearest"
 const char* to_string(rung_name r) noexcept;
 
 /// One rung. Rates are probabilities (bounds may exceed 1); below the smallest double they are 0 and the
@@ -116,14 +116,15 @@ public:
     /// The same for any number of places a point, say one for each interfering neighbour. Weights sum to 1.
     exact_rung displaced(double es_n0, const std::vector<displaced_point>& arrivals) const;
 
-    /// Indices that point i faces at this Es/N0, ascending. Under MAP a point without a cell faces all others.
+    /// Indices that point i faces at this Es/N0, ascending. Under MAP a point without a cell faces all
+    /// others.
     std::vector<std::size_t> facing(double es_n0, std::size_t i) const;
 
     /*!
-     * Es/N0 (linear) beyond which the rung stays at or below the target: the largest crossing. To the relative
-     * error 1e-12; for a BER that rises and falls within 0.25 dB a crossing may be missed.
-     * \param target > 0, finite. \throws std::invalid_argument otherwise
-     * \returns nothing where the target is not crossed between −60 dB and 200 dB
+     * Es/N0 (linear) beyond which the rung stays at or below the target: the largest crossing. To the
+     * relative error 1e-12; for a BER that rises and falls within 0.25 dB a crossing may be missed. \param
+     * target > 0, finite. \throws std::invalid_argument otherwise \returns nothing where the target is not
+     * crossed between −60 dB and 200 dB
      */
     std::optional<double> es_n0_for_ser(double target, rung_name r = rung_name::exact) const;
     std::optional<double> es_n0_for_ber(double target, rung_name r = rung_name::exact) const;
@@ -140,7 +141,7 @@ private:
     std::unique_ptr<impl> d;
 };
 
-double from_db(double db) noexcept; ///< 10^(db/10)
+double from_db(double db) noexcept;  ///< 10^(db/10)
 double to_db(double ratio) noexcept; ///< 10·log10(ratio)
 
 } // namespace halfplane

@@ -42,6 +42,6 @@ constexpr double law_wedge_accuracy = 1e-12;
  * The same with exp(−r²/2) replaced by the tail T(r²/2) of a law. Arguments as above; the exponent is
  * −ln T at the point of the edge that is closest to the mean.
  */
-wedge_value wedge(const law &channel, double h, double x1, double x2);
+wedge_value wedge(const law& channel, double h, double x1, double x2);
 
 } // namespace halfplane

@@ -20,7 +20,7 @@ double cross(complex a, complex b)
 }
 
 /// From the equations of both lines: interpolating between vertices would drag in the error of a far one.
-complex crossing(const cut_line &a, const cut_line &b)
+complex crossing(const cut_line& a, const cut_line& b)
 {
     const double d = cross(a.normal, b.normal);
     return {(a.offset * b.normal.imag() - b.offset * a.normal.imag()) / d,
@@ -36,7 +36,7 @@ void cell_polygon::start(double half_width)
     d_vertices = {{-w, -w}, {w, -w}, {w, w}, {-w, w}};
 }
 
-bool cell_polygon::cut(const cut_line &line, double tolerance)
+bool cell_polygon::cut(const cut_line& line, double tolerance)
 {
     const std::size_t n = d_vertices.size();
     d_depth.resize(n);
@@ -78,7 +78,7 @@ bool cell_polygon::cut(const cut_line &line, double tolerance)
 double cell_polygon::reach() const
 {
     double square = 0;
-    for (const auto &v : d_vertices)
+    for (const auto& v : d_vertices)
         square = std::max(square, std::norm(v));
     return std::sqrt(square);
 }

@@ -25,14 +25,14 @@ public:
      * Cuts away n·y > offset, unless nothing reaches farther than `tolerance` beyond the line.
      * \returns false when nothing is left
      */
-    bool cut(const cut_line &line, double tolerance);
+    bool cut(const cut_line& line, double tolerance);
 
     /// Distance of the farthest vertex from the origin.
     double reach() const;
 
     /// Line k runs counter-clockwise from vertex(k) to vertex(k + 1).
     std::size_t size() const { return d_lines.size(); }
-    const cut_line &line(std::size_t k) const { return d_lines[k]; }
+    const cut_line& line(std::size_t k) const { return d_lines[k]; }
     complex vertex(std::size_t k) const { return d_vertices[k % d_vertices.size()]; }
 
 private:

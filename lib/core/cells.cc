@@ -38,11 +38,11 @@ struct candidate {
 class cutter
 {
 public:
-    cutter(const std::vector<complex> &points, const std::vector<double> &weights)
+    cutter(const std::vector<complex>& points, const std::vector<double>& weights)
         : d_points(points), d_weights(weights), d_grid(points)
     {
         complex low = points[0], high = low;
-        for (const auto &p : points) {
+        for (const auto& p : points) {
             low = {std::min(low.real(), p.real()), std::min(low.imag(), p.imag())};
             high = {std::max(high.real(), p.real()), std::max(high.imag(), p.imag())};
         }
@@ -70,10 +70,10 @@ public:
             for (const auto j : d_ring)
                 if (j != i)
                     d_candidates.push_back({std::abs(d_points[j] - at), j});
-            std::sort(d_candidates.begin(), d_candidates.end(), [](const candidate &a, const candidate &b) {
+            std::sort(d_candidates.begin(), d_candidates.end(), [](const candidate& a, const candidate& b) {
                 return a.distance < b.distance;
             });
-            for (const auto &c : d_candidates) {
+            for (const auto& c : d_candidates) {
                 if (!started) {
                     // The first candidate may not be the nearest point, but is within a bucket of it.
                     d_nearest = c.distance;
@@ -107,15 +107,15 @@ private:
         return d_weights.empty() ? 0.5 * distance : 0.5 * distance + (weight - d_weights[j]) / (2 * distance);
     }
 
-    const std::vector<complex> &d_points;
-    const std::vector<double> &d_weights;
+    const std::vector<complex>& d_points;
+    const std::vector<double>& d_weights;
     point_grid d_grid;
     double d_size, d_heaviest = 0, d_weight_range = 0, d_nearest = 0;
     std::vector<std::uint16_t> d_ring;
     std::vector<candidate> d_candidates;
 };
 
-complex middle(const cell_polygon &polygon)
+complex middle(const cell_polygon& polygon)
 {
     complex sum = 0;
     for (std::size_t k = 0; k < polygon.size(); ++k)
@@ -130,7 +130,7 @@ edge edge::reversed() const noexcept
     return {outer, inner, origin, -normal, -offset, -to, -from};
 }
 
-cells::cells(const std::vector<complex> &points, const std::vector<double> &weights)
+cells::cells(const std::vector<complex>& points, const std::vector<double>& weights)
     : d_points(points), d_weights(weights)
 {
     const std::size_t m = points.size();
@@ -143,10 +143,10 @@ cells::cells(const std::vector<complex> &points, const std::vector<double> &weig
             d_empty[i] = true;
             continue;
         }
-        const auto &polygon = work.polygon;
+        const auto& polygon = work.polygon;
         d_inside[i] = points[i] + middle(polygon);
         for (std::size_t k = 0; k < polygon.size(); ++k) {
-            const auto &line = polygon.line(k);
+            const auto& line = polygon.line(k);
             if (line.id < static_cast<int>(i)) // the box, or an edge that its other side has listed
                 continue;
             const auto previous = polygon.line((k + polygon.size() - 1) % polygon.size()).id;
@@ -169,7 +169,7 @@ cells::cells(const std::vector<complex> &points, const std::vector<double> &weig
         }
     }
     d_first.assign(1, 0);
-    for (const auto &list : of_cell) {
+    for (const auto& list : of_cell) {
         d_of_cell.insert(d_of_cell.end(), list.begin(), list.end());
         d_first.push_back(static_cast<std::uint32_t>(d_of_cell.size()));
     }
@@ -204,14 +204,14 @@ std::size_t cells::owner(complex y) const noexcept
     return best;
 }
 
-cells cells::mapped(const matrix2 &a) const
+cells cells::mapped(const matrix2& a) const
 {
     const auto apply = [&](complex z) {
         return complex{a[0] * z.real() + a[1] * z.imag(), a[2] * z.real() + a[3] * z.imag()};
     };
     const double det = a[0] * a[3] - a[1] * a[2];
     cells out = *this;
-    for (auto &e : out.d_edges) {
+    for (auto& e : out.d_edges) {
         // Normals map by the inverse transpose; lengths along the line by that of the mapped tangent.
         const complex normal = complex{a[3] * e.normal.real() - a[2] * e.normal.imag(),
                                        -a[1] * e.normal.real() + a[0] * e.normal.imag()} /
@@ -228,7 +228,7 @@ cells cells::mapped(const matrix2 &a) const
         e.from = foot + e.from * scale;
         e.to = foot + e.to * scale;
     }
-    for (auto &p : out.d_inside)
+    for (auto& p : out.d_inside)
         p = apply(p);
     return out;
 }

@@ -66,13 +66,15 @@ double nakagami::density(double g, unsigned branches) const
     const double off = (x - shape) / shape;
     const double s2 = shape * shape;
     const double remainder = (1 / 12.0 - (1 / 360.0 - (1 / 1260.0 - 1 / (1680 * s2)) / s2) / s2) / shape;
-    return d_m * std::exp(shape * (std::log1p(off) - off) - remainder) * std::sqrt(shape / 6.283185307179586) / x;
+    return d_m * std::exp(shape * (std::log1p(off) - off) - remainder) *
+           std::sqrt(shape / 6.283185307179586) / x;
 }
 
 rician::rician(double k_db) : d_k_db(k_db), d_k(std::pow(10.0, k_db / 10))
 {
     if (!(std::abs(k_db) <= greatest_k_db))
-        throw std::invalid_argument(shown("K of the Rician law must lie between -100 and 100 dB, got ", k_db));
+        throw std::invalid_argument(
+            shown("K of the Rician law must lie between -100 and 100 dB, got ", k_db));
 }
 
 std::string rician::name() const

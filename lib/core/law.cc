@@ -79,7 +79,8 @@ const std::map<std::string, entry>& entries()
         {"rician", {1, "rician:K_DB", [](const arguments& a) { return std::make_shared<rician>(a[0]); }}},
         {"nakagami", {1, "nakagami:M", [](const arguments& a) { return std::make_shared<nakagami>(a[0]); }}},
         {"impulsive",
-         {2, "impulsive:A:GAMMA",
+         {2,
+          "impulsive:A:GAMMA",
           [](const arguments& a) { return std::make_shared<impulsive>(a[0], a[1]); }}},
     };
     return table;

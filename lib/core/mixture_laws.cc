@@ -78,8 +78,9 @@ std::vector<channel_state> combined(const std::vector<channel_state>& branch, un
         for (const auto& s : sums)
             for (const auto& b : branch)
                 next.push_back({s.probability * b.probability, s.gain + b.gain});
-        std::sort(next.begin(), next.end(),
-                  [](const channel_state& a, const channel_state& b) { return a.gain < b.gain; });
+        std::sort(next.begin(), next.end(), [](const channel_state& a, const channel_state& b) {
+            return a.gain < b.gain;
+        });
         sums.clear();
         for (const auto& n : next)
             if (!sums.empty() && n.gain - sums.back().gain <= 1e-14 * n.gain)

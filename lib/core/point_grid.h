@@ -14,11 +14,11 @@ namespace halfplane {
 class point_grid
 {
 public:
-    explicit point_grid(const std::vector<complex> &points)
+    explicit point_grid(const std::vector<complex>& points)
     {
         double low_q = points[0].imag(), high_q = low_q, high_i = points[0].real();
         d_low_i = high_i;
-        for (const auto &p : points) {
+        for (const auto& p : points) {
             d_low_i = std::min(d_low_i, p.real());
             high_i = std::max(high_i, p.real());
             low_q = std::min(low_q, p.imag());
@@ -32,7 +32,7 @@ public:
         d_columns = static_cast<int>(wide / d_pitch) + 1;
         d_rows = static_cast<int>(tall / d_pitch) + 1;
         d_first.assign(static_cast<std::size_t>(d_columns) * d_rows + 1, 0);
-        for (const auto &p : points)
+        for (const auto& p : points)
             ++d_first[bucket(column(p), row(p)) + 1];
         for (std::size_t k = 1; k < d_first.size(); ++k)
             d_first[k] += d_first[k - 1];
@@ -43,7 +43,7 @@ public:
     }
 
     /// Appends the points whose bucket is `ring` buckets away from that of `p`; false when none can follow.
-    bool ring(complex p, int ring, std::vector<std::uint16_t> &out) const
+    bool ring(complex p, int ring, std::vector<std::uint16_t>& out) const
     {
         const int c = column(p), r = row(p);
         if (ring > std::max({c, d_columns - 1 - c, r, d_rows - 1 - r}))

@@ -52,7 +52,9 @@ signal_set mapped(const signal_set& set, const matrix2& a)
     std::vector<complex> points;
     for (const auto& p : set.points())
         points.push_back(apply(a, p));
-    return {std::move(points), set.labels(), set.label_bits(),
+    return {std::move(points),
+            set.labels(),
+            set.label_bits(),
             set.uniform() ? std::vector<double>{} : set.priors()};
 }
 
@@ -80,7 +82,8 @@ diagram::diagram(const signal_set& set, std::vector<double> weights, const matri
     view.whiten = whiten;
     for (std::size_t i = 0; i < set.size(); ++i) {
         const complex p = set.points()[i];
-        view.arrivals.push_back(moved() ? arriving(i, p, set.priors()[i]) : arrival{i, p, set.priors()[i], i});
+        view.arrivals.push_back(moved() ? arriving(i, p, set.priors()[i])
+                                        : arrival{i, p, set.priors()[i], i});
     }
 }
 
@@ -115,9 +118,7 @@ scene diagram::displaced(std::vector<arrival> arrivals) const
 predictor::impl::impl(signal_set s, std::shared_ptr<const law> c, detector r, noise_shape shape)
     : given(std::move(s)),
       rule(r == detector::automatic ? (given.uniform() ? detector::ml : detector::map) : r),
-      channel(std::move(c)),
-      scale(scale_to_one(given)),
-      es(given.es() * scale * scale),
+      channel(std::move(c)), scale(scale_to_one(given)), es(given.es() * scale * scale),
       shaped(whitening(shape)),
       to_detector(shaped && shape.decision == metric::matched ? *shaped : matrix2{1, 0, 0, 1}),
       set(shaped && shape.decision == metric::matched ? mapped(given.scaled(scale), *shaped)
@@ -211,7 +212,8 @@ std::vector<double> predictor::impl::row(double es_n0, std::size_t i) const
 void predictor::impl::require_index(std::size_t i) const
 {
     if (i >= set.size())
-        throw std::out_of_range("no point " + std::to_string(i) + " in a set of " + std::to_string(set.size()));
+        throw std::out_of_range("no point " + std::to_string(i) + " in a set of " +
+                                std::to_string(set.size()));
 }
 
 double predictor::impl::ln_rate(double es_n0, rung_name r, bool bits) const

@@ -38,7 +38,7 @@ struct quadrature_rule {
         }
     }
 
-    static const quadrature_rule &get()
+    static const quadrature_rule& get()
     {
         static const quadrature_rule rule;
         return rule;

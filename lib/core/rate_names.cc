@@ -7,7 +7,7 @@
 
 namespace halfplane {
 
-detector parse_detector(const std::string &text)
+detector parse_detector(const std::string& text)
 {
     if (text == "automatic")
         return detector::automatic;
@@ -18,7 +18,7 @@ detector parse_detector(const std::string &text)
     throw std::invalid_argument("a detector is 'map', 'ml' or 'automatic', got '" + text + "'");
 }
 
-rung_name parse_rung(const std::string &text)
+rung_name parse_rung(const std::string& text)
 {
     for (const auto r : {rung_name::exact, rung_name::facing, rung_name::union_bound, rung_name::nearest})
         if (text == to_string(r))
@@ -26,7 +26,7 @@ rung_name parse_rung(const std::string &text)
     throw std::invalid_argument("a rung is 'exact', 'facing', 'union' or 'nearest', got '" + text + "'");
 }
 
-const char *to_string(rung_name r) noexcept
+const char* to_string(rung_name r) noexcept
 {
     switch (r) {
     case rung_name::exact:

@@ -10,13 +10,13 @@ namespace halfplane {
 
 namespace {
 
-void add_scaled(ser_ber &sum, double old_factor, const ser_ber &other, double factor)
+void add_scaled(ser_ber& sum, double old_factor, const ser_ber& other, double factor)
 {
     sum.ser = sum.ser * old_factor + other.ser * factor;
     sum.ber = sum.ber * old_factor + other.ber * factor;
 }
 
-void add_scaled(std::vector<double> &sum, double old_factor, const std::vector<double> &other, double factor)
+void add_scaled(std::vector<double>& sum, double old_factor, const std::vector<double>& other, double factor)
 {
     sum.resize(other.size());
     for (std::size_t k = 0; k < sum.size(); ++k)
@@ -31,7 +31,7 @@ double unscaled(double x, double ln_scale)
     return x > 0 ? std::exp(std::log(x) + ln_scale) : 0;
 }
 
-void fill(rung &out, const ser_ber &sum, double ln_scale, unsigned label_bits)
+void fill(rung& out, const ser_ber& sum, double ln_scale, unsigned label_bits)
 {
     out.ser = unscaled(sum.ser, ln_scale);
     out.ber = unscaled(sum.ber, ln_scale);
@@ -42,7 +42,7 @@ void fill(rung &out, const ser_ber &sum, double ln_scale, unsigned label_bits)
 
 } // namespace
 
-const ser_ber &rate_sums::of(rung_name r) const
+const ser_ber& rate_sums::of(rung_name r) const
 {
     switch (r) {
     case rung_name::exact:
@@ -104,9 +104,9 @@ rates rate_sums::finish(unsigned label_bits) const
     fill(out.nearest, nearest, ln_scale, label_bits);
     out.exact.ser_by_point = by_point;
     out.exact.ber_by_bit = by_bit;
-    for (double &p : out.exact.ser_by_point)
+    for (double& p : out.exact.ser_by_point)
         p = unscaled(p, ln_scale);
-    for (double &p : out.exact.ber_by_bit)
+    for (double& p : out.exact.ber_by_bit)
         p = unscaled(p, ln_scale);
     return out;
 }

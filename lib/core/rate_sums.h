@@ -27,13 +27,13 @@ struct rate_sums {
     ser_ber exact, facing, union_bound, nearest;
     std::vector<double> by_point, by_bit;
 
-    const ser_ber &of(rung_name r) const;
+    const ser_ber& of(rung_name r) const;
     /// Sum of all figures, to tell when a series of them has settled.
     double magnitude() const;
     /// The smallest figure that is not 0, including those by point and by bit.
     double least() const;
     /// Adds `weight` times the other figures, scales reconciled.
-    void add(double weight, const rate_sums &other);
+    void add(double weight, const rate_sums& other);
     rates finish(unsigned label_bits) const;
 };
 

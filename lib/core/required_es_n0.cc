@@ -20,7 +20,7 @@ constexpr double lowest_db = -60, highest_db = 200;
  * \param safe_db beyond it f is known to stay below the target
  */
 std::optional<double>
-largest_crossing(const std::function<double(double)> &f, double ln_target, double safe_db)
+largest_crossing(const std::function<double(double)>& f, double ln_target, double safe_db)
 {
     constexpr double step = 0.25;
     double high = safe_db, low = high;
@@ -41,7 +41,7 @@ largest_crossing(const std::function<double(double)> &f, double ln_target, doubl
 }
 
 /// Smallest x, to a coarse grid, beyond which a falling function stays at or below ln_target.
-std::optional<double> bracket_falling(const std::function<double(double)> &f, double ln_target)
+std::optional<double> bracket_falling(const std::function<double(double)>& f, double ln_target)
 {
     if (!(f(highest_db) <= ln_target))
         return std::nullopt;

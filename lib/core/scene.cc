@@ -15,7 +15,7 @@ namespace {
 constexpr double inf = std::numeric_limits<double>::infinity();
 
 /// Squared distance from the mean to the nearest place of an edge.
-double squared_approach(const edge_view &v)
+double squared_approach(const edge_view& v)
 {
     const double aside = std::max({0.0, v.from, -v.to});
     return v.height * v.height + aside * aside;
@@ -25,7 +25,7 @@ double squared_approach(const edge_view &v)
 class scaled_wedge
 {
 public:
-    scaled_wedge(const noise &n, double least_squared_distance)
+    scaled_wedge(const noise& n, double least_squared_distance)
         : d_noise(n), d_ln_scale(ln_tail(least_squared_distance))
     {
     }
@@ -34,7 +34,7 @@ public:
     /// The number that stands for probability 1.
     double one() const { return std::exp(-d_ln_scale); }
 
-    double operator()(const edge_view &v) const
+    double operator()(const edge_view& v) const
     {
         const double k = d_noise.per_unit;
         const double h = std::abs(v.height) * k;
@@ -66,10 +66,10 @@ private:
 };
 
 /// The smallest distance at which anything goes wrong: sets the scale.
-double least_squared_distance(const scene &s)
+double least_squared_distance(const scene& s)
 {
     double least = inf;
-    for (const auto &a : s.arrivals) {
+    for (const auto& a : s.arrivals) {
         if (a.owner != a.sent)
             return 0;
         for (auto k = s.regions->begin_of(a.sent); k != s.regions->end_of(a.sent); ++k)
@@ -79,33 +79,33 @@ double least_squared_distance(const scene &s)
 }
 
 /// Sum over the edges of cell j of wedges, + where the mean lies on the inner side of the edge.
-double mass_across(const scene &s, const scaled_wedge &w, std::size_t j, complex mean)
+double mass_across(const scene& s, const scaled_wedge& w, std::size_t j, complex mean)
 {
     double sum = 0;
     for (auto k = s.regions->begin_of(j); k != s.regions->end_of(j); ++k) {
-        const auto &e = s.regions->edges()[*k];
+        const auto& e = s.regions->edges()[*k];
         const auto v = e.seen_from(mean);
         sum += (v.height >= 0) == (e.inner == j) ? w(v) : -w(v);
     }
     return sum;
 }
 
-void exact_ser(const scene &s, const scaled_wedge &w, rate_sums &out)
+void exact_ser(const scene& s, const scaled_wedge& w, rate_sums& out)
 {
     out.by_point.assign(s.set->size(), 0);
     std::vector<double> sent_weight(s.set->size(), 0);
     if (s.undisplaced && s.weights.empty() && !s.whiten) {
         // Both sides see an edge alike.
-        for (const auto &e : s.regions->edges()) {
+        for (const auto& e : s.regions->edges()) {
             const double p = w(e.seen_from(e.origin));
             out.by_point[e.inner] += p;
             out.by_point[e.outer] += p;
         }
-        for (const auto &a : s.arrivals)
+        for (const auto& a : s.arrivals)
             out.exact.ser += a.weight * out.by_point[a.sent];
         return;
     }
-    for (const auto &a : s.arrivals) {
+    for (const auto& a : s.arrivals) {
         const double p = (a.owner == a.sent ? 0 : w.one()) + mass_across(s, w, a.sent, a.mean);
         out.by_point[a.sent] += a.weight * p;
         sent_weight[a.sent] += a.weight;
@@ -116,17 +116,17 @@ void exact_ser(const scene &s, const scaled_wedge &w, rate_sums &out)
             out.by_point[i] /= sent_weight[i];
 }
 
-void exact_ber(const scene &s, const scaled_wedge &w, rate_sums &out)
+void exact_ber(const scene& s, const scaled_wedge& w, rate_sums& out)
 {
     const unsigned bits = s.set->label_bits();
     out.by_bit.assign(bits, 0);
     std::vector<double> one_arrival(bits);
-    for (const auto &a : s.arrivals) {
+    for (const auto& a : s.arrivals) {
         const label_t sent = s.set->labels()[a.sent];
         const label_t wrong_at_mean = sent ^ s.set->labels()[a.owner];
         for (unsigned k = 0; k < bits; ++k)
             one_arrival[k] = (wrong_at_mean >> k & 1) ? w.one() : 0;
-        for (const auto &border : *s.walls) {
+        for (const auto& border : *s.walls) {
             const auto v = border.line.seen_from(a.mean);
             if (w.relative_ln_tail(squared_approach(v)) < -700)
                 continue;
@@ -163,18 +163,19 @@ double pairwise(const scene& s, const scaled_wedge& w, std::size_t i, std::size_
     return w.half_plane(h);
 }
 
-void add_pair(const scene &s, const scaled_wedge &w, std::size_t i, std::size_t j, ser_ber &sum)
+void add_pair(const scene& s, const scaled_wedge& w, std::size_t i, std::size_t j, ser_ber& sum)
 {
-    const auto &prior = s.set->priors();
-    const double p = s.weights.empty() && !s.whiten ? (prior[i] + prior[j]) * pairwise(s, w, i, j)
-                                       : prior[i] * pairwise(s, w, i, j) + prior[j] * pairwise(s, w, j, i);
+    const auto& prior = s.set->priors();
+    const double p = s.weights.empty() && !s.whiten
+                         ? (prior[i] + prior[j]) * pairwise(s, w, i, j)
+                         : prior[i] * pairwise(s, w, i, j) + prior[j] * pairwise(s, w, j, i);
     sum.ser += p;
     sum.ber += p * label_distance(s.set->labels()[i], s.set->labels()[j]) / s.set->label_bits();
 }
 
-void facing_sum(const scene &s, const scaled_wedge &w, ser_ber &sum)
+void facing_sum(const scene& s, const scaled_wedge& w, ser_ber& sum)
 {
-    for (const auto &e : s.regions->edges())
+    for (const auto& e : s.regions->edges())
         add_pair(s, w, e.inner, e.outer, sum);
     for (std::size_t i = 0; i < s.set->size(); ++i) {
         if (!s.regions->empty(i))
@@ -191,7 +192,7 @@ void facing_sum(const scene &s, const scaled_wedge &w, ser_ber &sum)
 
 } // namespace
 
-rate_sums evaluate(const scene &s, const noise &n, unsigned parts)
+rate_sums evaluate(const scene& s, const noise& n, unsigned parts)
 {
     const scaled_wedge w(n, least_squared_distance(s));
     rate_sums out;
@@ -220,18 +221,18 @@ rate_sums evaluate(const scene &s, const noise &n, unsigned parts)
     return out;
 }
 
-std::vector<double> transition_masses(const scene &s, const noise &n, const arrival &from)
+std::vector<double> transition_masses(const scene& s, const noise& n, const arrival& from)
 {
     const scaled_wedge w(n, 0);
     std::vector<double> p(s.set->size(), 0);
-    for (const auto &e : s.regions->edges()) {
+    for (const auto& e : s.regions->edges()) {
         const auto v = e.seen_from(from.mean);
         const double mass = v.height >= 0 ? w(v) : -w(v);
         p[e.inner] -= mass;
         p[e.outer] += mass;
     }
     p[from.owner] += 1;
-    for (double &x : p)
+    for (double& x : p)
         x = std::max(x, 0.0);
     return p;
 }

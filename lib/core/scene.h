@@ -25,14 +25,14 @@ struct arrival {
 /// Noise of a scene: deviation 1/per_unit in each dimension, under a law (none: AWGN).
 struct noise {
     double per_unit;
-    const law *fading = nullptr;
+    const law* fading = nullptr;
 };
 
 /// Borders, labels and arrivals in the plane in which the noise is circular.
 struct scene {
-    const signal_set *set;
-    const cells *regions;
-    const std::vector<wall> *walls;
+    const signal_set* set;
+    const cells* regions;
+    const std::vector<wall>* walls;
     std::vector<arrival> arrivals;
     std::vector<double> weights;     ///< w_i of the power diagram, empty where all are equal
     const matrix2* whiten = nullptr; ///< from the set's plane to this one, null where they are the same
@@ -40,9 +40,9 @@ struct scene {
 };
 
 /// All asked figures of a scene.
-rate_sums evaluate(const scene &where, const noise &what, unsigned parts);
+rate_sums evaluate(const scene& where, const noise& what, unsigned parts);
 
 /// P(j | arrival) for all j.
-std::vector<double> transition_masses(const scene &where, const noise &what, const arrival &from);
+std::vector<double> transition_masses(const scene& where, const noise& what, const arrival& from);
 
 } // namespace halfplane

@@ -20,11 +20,11 @@ struct placed {
     double distance, from, to;
 };
 
-placed place(const edge &given, const std::vector<label_t> &labels)
+placed place(const edge& given, const std::vector<label_t>& labels)
 {
     const bool lower = given.normal.imag() < 0 || (given.normal.imag() == 0 && given.normal.real() < 0);
     placed out{{lower ? given.reversed() : given, 0, 0}, 0, 0, 0};
-    const edge &e = out.piece.line;
+    const edge& e = out.piece.line;
     out.piece.mask = labels[e.inner] ^ labels[e.outer];
     out.piece.inner_bits = labels[e.inner] & out.piece.mask;
     const auto seen = e.seen_from({0, 0});
@@ -34,7 +34,7 @@ placed place(const edge &given, const std::vector<label_t> &labels)
     return out;
 }
 
-bool continues(const placed &a, const placed &b)
+bool continues(const placed& a, const placed& b)
 {
     return a.piece.mask == b.piece.mask && a.piece.inner_bits == b.piece.inner_bits &&
            std::abs(a.piece.line.normal - b.piece.line.normal) <= same_line &&
@@ -43,16 +43,16 @@ bool continues(const placed &a, const placed &b)
 
 } // namespace
 
-std::vector<wall> build_walls(const cells &regions, const std::vector<label_t> &labels)
+std::vector<wall> build_walls(const cells& regions, const std::vector<label_t>& labels)
 {
     std::vector<placed> all;
     all.reserve(regions.edges().size());
-    for (const auto &e : regions.edges())
+    for (const auto& e : regions.edges())
         all.push_back(place(e, labels));
     // A coarse key keeps the pieces of one line together; a line that happens to straddle two keys is merely
     // not joined, which costs time and nothing else.
     const auto key = [](double x) { return std::floor(x * 1e12 + 0.5); };
-    std::sort(all.begin(), all.end(), [&](const placed &a, const placed &b) {
+    std::sort(all.begin(), all.end(), [&](const placed& a, const placed& b) {
         const auto ka = key(a.piece.line.normal.real()), kb = key(b.piece.line.normal.real());
         if (ka != kb)
             return ka < kb;

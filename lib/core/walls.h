@@ -19,6 +19,6 @@ struct wall {
 };
 
 /// The walls of labelled cells. Their geometry equals that of the edges to rounding.
-std::vector<wall> build_walls(const cells &regions, const std::vector<label_t> &labels);
+std::vector<wall> build_walls(const cells& regions, const std::vector<label_t>& labels);
 
 } // namespace halfplane

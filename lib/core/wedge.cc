@@ -49,7 +49,7 @@ double hyperbolic_length(double h, double a, double b, double near)
 template <int N>
 double cartesian(double h, double a, double length)
 {
-    const auto &rule = quadrature_rule<N>::get();
+    const auto& rule = quadrature_rule<N>::get();
     double sum = 0;
     for (int k = 0; k < N; ++k) {
         const double u = length * rule.node[k];
@@ -81,10 +81,10 @@ double cartesian_of_order(double h, double a, double length, double lambda, doub
  * \param ln_ratio ln of tail at r²/2 over tail at R²/2
  */
 template <typename LnRatio>
-double hyperbolic(double h, double a, double near, double length, const LnRatio &ln_ratio)
+double hyperbolic(double h, double a, double near, double length, const LnRatio& ln_ratio)
 {
     constexpr double panel = 2.0;
-    const auto &rule = quadrature_rule<24>::get();
+    const auto& rule = quadrature_rule<24>::get();
     const int panels = std::max(1, static_cast<int>(std::ceil(length / panel)));
     const double step = length / panels;
     double sum = 0;
@@ -122,7 +122,7 @@ double gaussian_side(double h, double a, double b)
     });
 }
 
-double law_side(const law &channel, double h, double a, double b)
+double law_side(const law& channel, double h, double a, double b)
 {
     const double near = std::hypot(h, a);
     if (near == 0)
@@ -149,7 +149,7 @@ double law_side(const law &channel, double h, double a, double b)
 
 /// Splits an edge at the foot; `side(a, b)` integrates one side of it.
 template <typename Exponent, typename Side>
-wedge_value split_at_foot(double x1, double x2, const Exponent &exponent, const Side &side)
+wedge_value split_at_foot(double x1, double x2, const Exponent& exponent, const Side& side)
 {
     if (!(x1 < x2))
         return {exponent(0).exponent, 0};
@@ -178,7 +178,7 @@ wedge_value wedge(double h, double x1, double x2) noexcept
         [h](double a, double b) { return gaussian_side(h, a, b); });
 }
 
-wedge_value wedge(const law &channel, double h, double x1, double x2)
+wedge_value wedge(const law& channel, double h, double x1, double x2)
 {
     return split_at_foot(
         x1,

@@ -17,7 +17,7 @@ double q_function(double x)
     return 0.5 * std::erfc(x / std::sqrt(2.0));
 }
 
-signal_set random_set(std::size_t m, std::mt19937 &draw)
+signal_set random_set(std::size_t m, std::mt19937& draw)
 {
     std::normal_distribution<double> normal;
     std::vector<complex> points;
@@ -31,7 +31,7 @@ std::string refusal(double es_n0)
     const predictor two(signal_set::with_natural_labels({{1, 0}, {-1, 0}}));
     try {
         two.at(es_n0);
-    } catch (const std::invalid_argument &e) {
+    } catch (const std::invalid_argument& e) {
         return e.what();
     }
     return "accepted";

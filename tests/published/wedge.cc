@@ -40,8 +40,12 @@ TEST(Wedge, AgreesWithMpmathFromOneHalfTo1e300)
         largest = std::max(largest, expected);
     }
     for (const auto& [kind, w] : by_kind)
-        std::printf("%-10s %4d cases, worst relative error %.2e (ln: %.1e) at %s\n", kind.c_str(), w.cases,
-                    w.error, w.ln_error, w.row.c_str());
+        std::printf("%-10s %4d cases, worst relative error %.2e (ln: %.1e) at %s\n",
+                    kind.c_str(),
+                    w.cases,
+                    w.error,
+                    w.ln_error,
+                    w.row.c_str());
     EXPECT_GT(largest, 0.45);
     EXPECT_LT(smallest, 1e-290);
 }
@@ -58,7 +62,8 @@ TEST(Wedge, LimitsAndSymmetry)
     EXPECT_NEAR(wedge(3, -5, 7).value() / (wedge(3, -5, 1).value() + wedge(3, 1, 7).value()), 1, 1e-13);
     // e^-5000 and beyond: Q(x) = φ(x)/x·(1 − 1/x² + 3/x⁴ − …), DLMF 7.12.1
     for (const double x : {100.0, 1e3, 1e4}) {
-        const double expected = -0.5 * x * x - std::log(x * std::sqrt(2 * M_PI)) + std::log1p(-1 / (x * x) + 3 / std::pow(x, 4));
+        const double expected =
+            -0.5 * x * x - std::log(x * std::sqrt(2 * M_PI)) + std::log1p(-1 / (x * x) + 3 / std::pow(x, 4));
         EXPECT_NEAR(wedge(x, -inf, inf).ln(), expected, 1e-9) << x;
     }
 }
