@@ -23,7 +23,7 @@ public:
         0.001; ///< chance to cry burst at independent errors, over all lengths
 
     /// `n` judged symbols in order: indices sent and decided.
-    void add(const std::uint16_t *sent, const std::uint16_t *decided, std::size_t n);
+    void add(const std::uint16_t* sent, const std::uint16_t* decided, std::size_t n);
 
     /*!
      * Variance of the error counts over what independent symbols give (index of dispersion), the largest

@@ -44,18 +44,18 @@ public:
      * \param sent, decided `n` indices below points.size(): what was sent and what it was taken for
      * \param points   the set's points, the same in every call
      */
-    void add(const std::complex<float> *received,
-             const std::uint16_t *sent,
-             const std::uint16_t *decided,
+    void add(const std::complex<float>* received,
+             const std::uint16_t* sent,
+             const std::uint16_t* decided,
              std::size_t n,
-             const std::vector<complex> &points);
+             const std::vector<complex>& points);
     /// One symbol: the sample, the point that was sent, whether it was taken for another.
     void add(std::complex<float> received, complex sent, bool error);
-    void merge(const gauge &later);
+    void merge(const gauge& later);
     std::uint64_t count() const noexcept { return d_all.n; }
     /// Nothing where fewer than 3 symbols came, one point only was sent, there is no gain, or the noise is
     /// below 1e-13 of the received energy, where sums over single-precision samples cannot tell it.
-    std::optional<gauge_result> solve(const signal_set &set) const;
+    std::optional<gauge_result> solve(const signal_set& set) const;
 
 private:
     struct sums {
@@ -64,7 +64,7 @@ private:
         long double s_re = 0, s_im = 0;   // Σ s
         long double rs_re = 0, rs_im = 0; // Σ r·s*
         long double rr = 0, ss = 0;       // Σ|r|², Σ|s|²
-        void merge(const sums &later);
+        void merge(const sums& later);
     };
     sums d_all, d_errors;
 };

@@ -24,7 +24,7 @@ public:
     static constexpr double accuracy = 1e-12;
 
     /// Refers to the predictor, which must outlive the curve.
-    explicit ser_curve(const predictor &source) : d_source(source) {}
+    explicit ser_curve(const predictor& source) : d_source(source) {}
 
     struct value {
         double ln_ser;
@@ -37,9 +37,9 @@ public:
 private:
     static constexpr std::size_t nodes = 16;
     using panel = std::array<double, nodes>;
-    const panel &coefficients(int floor_db) const;
+    const panel& coefficients(int floor_db) const;
 
-    const predictor &d_source;
+    const predictor& d_source;
     mutable std::map<int, panel> d_panels;
 };
 

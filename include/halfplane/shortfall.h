@@ -29,7 +29,7 @@ public:
         double variance = 0;        ///< of es_n0_db, independent from stretch to stretch, dB²
         double error_influence = 0; ///< as in gauge_result
     };
-    void add(const stretch &s);
+    void add(const stretch& s);
     std::uint64_t symbols() const noexcept { return d_symbols; }
 
     /// Σ n_w·SER(γ_w − x) and what the interval needs, at a shift of x dB.
@@ -39,7 +39,7 @@ public:
         double variance;   ///< of the shift, by the variances of the γ_w, dB²
         double covariance; ///< of the shift's γ part (dB) and the number of counted errors
     };
-    expectation at(const ser_curve &curve, double shift_db) const;
+    expectation at(const ser_curve& curve, double shift_db) const;
     double lowest_db() const;
     double highest_db() const;
 
@@ -50,7 +50,7 @@ private:
         double n_variance = 0;        // Σ n·variance
         double n2_variance = 0;       // Σ n²·variance
         double error_influence = 0;
-        void merge(const bin &other);
+        void merge(const bin& other);
     };
     std::map<long long, bin> d_bins;
     int d_width_exponent = -20; // bins are 2^this dB wide
@@ -86,6 +86,6 @@ struct shortfall_question {
  * −60 to 200 dB gives the measured rate (more errors than noise alone can make), `db` and `high` are absent
  * and `low`, if there is one, is x at SER's lower end minus u.
  */
-shortfall find_shortfall(const snr_record &record, const ser_curve &curve, const shortfall_question &asked);
+shortfall find_shortfall(const snr_record& record, const ser_curve& curve, const shortfall_question& asked);
 
 } // namespace halfplane

@@ -20,15 +20,15 @@ namespace halfplane {
 class tally
 {
 public:
-    explicit tally(const signal_set &set);
+    explicit tally(const signal_set& set);
 
     /// `n` judged symbols: indices sent and decided, all below set.size() (not checked).
-    void count(const std::uint16_t *sent_index, const std::uint16_t *decided, std::size_t n);
+    void count(const std::uint16_t* sent_index, const std::uint16_t* decided, std::size_t n);
     /// One judged symbol.
     void count(std::uint16_t sent_index, std::uint16_t decided) { count(&sent_index, &decided, 1); }
     void count_nonfinite() { ++nonfinite; }
     void count_excluded(exclusion cause) { ++excluded[-1 - static_cast<int>(cause)]; }
-    void merge(const tally &later);
+    void merge(const tally& later);
 
     std::uint64_t symbols = 0, symbol_errors = 0; ///< judged, and of these in error
     std::uint64_t bits = 0, bit_errors = 0;

@@ -28,7 +28,7 @@ public:
 
     /// Adds `count` (> 0) to the pair; both indices below the set's size.
     void add(std::uint16_t from, std::uint16_t to, std::uint64_t count = 1);
-    void merge(const transition_counts &later);
+    void merge(const transition_counts& later);
     /// How often this pair was counted.
     std::uint64_t count(std::uint16_t from, std::uint16_t to) const;
     /// Every counted pair, ascending by (from, to).

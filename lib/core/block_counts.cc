@@ -8,7 +8,7 @@
 
 namespace halfplane {
 
-void block_counts::add(const std::uint16_t *sent, const std::uint16_t *decided, std::size_t n)
+void block_counts::add(const std::uint16_t* sent, const std::uint16_t* decided, std::size_t n)
 {
     for (std::size_t k = 0; k < n;) {
         const std::size_t end = k + std::min<std::size_t>(n - k, shortest - d_open_symbols);
@@ -28,7 +28,7 @@ void block_counts::add(const std::uint16_t *sent, const std::uint16_t *decided, 
 /// Two blocks of one length make one of the next, so a level costs half of the level below.
 void block_counts::close_block(std::uint64_t errors)
 {
-    for (auto &l : d_levels) {
+    for (auto& l : d_levels) {
         ++l.blocks;
         l.errors += errors;
         l.squares += static_cast<long double>(errors) * static_cast<long double>(errors);
@@ -46,7 +46,7 @@ std::optional<double> block_counts::dispersion() const
     if (d_errors < least_errors)
         return std::nullopt;
     const auto heard =
-        static_cast<std::size_t>(std::count_if(d_levels.begin(), d_levels.end(), [](const level &l) {
+        static_cast<std::size_t>(std::count_if(d_levels.begin(), d_levels.end(), [](const level& l) {
             return l.blocks >= least_blocks && l.errors >= least_errors;
         }));
     if (heard == 0)
@@ -54,7 +54,7 @@ std::optional<double> block_counts::dispersion() const
     const double limit = significance / static_cast<double>(heard);
     double largest = 1;
     for (std::size_t k = 0; k < heard; ++k) {
-        const auto &l = d_levels[k];
+        const auto& l = d_levels[k];
         const double blocks = static_cast<double>(l.blocks), length = static_cast<double>(shortest << k);
         const double errors = static_cast<double>(l.errors), mean = errors / blocks, rate = mean / length;
         if (rate >= 1)

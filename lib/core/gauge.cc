@@ -36,7 +36,7 @@ struct chunk_sums {
 
 } // namespace
 
-void gauge::sums::merge(const sums &later)
+void gauge::sums::merge(const sums& later)
 {
     n += later.n;
     r_re += later.r_re;
@@ -49,13 +49,13 @@ void gauge::sums::merge(const sums &later)
     ss += later.ss;
 }
 
-void gauge::add(const std::complex<float> *received,
-                const std::uint16_t *sent,
-                const std::uint16_t *decided,
+void gauge::add(const std::complex<float>* received,
+                const std::uint16_t* sent,
+                const std::uint16_t* decided,
                 std::size_t n,
-                const std::vector<complex> &points)
+                const std::vector<complex>& points)
 {
-    auto widened = [](const chunk_sums &c, std::uint64_t count) {
+    auto widened = [](const chunk_sums& c, std::uint64_t count) {
         return sums{count, c.r_re, c.r_im, c.s_re, c.s_im, c.rs_re, c.rs_im, c.rr, c.ss};
     };
     for (std::size_t first = 0; first < n; first += chunk) {
@@ -83,13 +83,13 @@ void gauge::add(std::complex<float> received, complex sent, bool error)
     add(&received, &index, &decided, 1, {sent});
 }
 
-void gauge::merge(const gauge &later)
+void gauge::merge(const gauge& later)
 {
     d_all.merge(later.d_all);
     d_errors.merge(later.d_errors);
 }
 
-std::optional<gauge_result> gauge::solve(const signal_set &set) const
+std::optional<gauge_result> gauge::solve(const signal_set& set) const
 {
     if (d_all.n < 3)
         return std::nullopt;
@@ -117,7 +117,7 @@ std::optional<gauge_result> gauge::solve(const signal_set &set) const
     result.mer_db = -20 * std::log10(result.evm_rms);
 
     // Over the erroneous symbols alone: Σ e·s* and Σ|e|² from their own sums, with the g and o of all.
-    const auto &w = d_errors;
+    const auto& w = d_errors;
     const long double m = static_cast<long double>(w.n);
     const wide wr{w.r_re, w.r_im}, ws{w.s_re, w.s_im}, wrs{w.rs_re, w.rs_im};
     const wide sum_e = wr - g * ws - m * o;

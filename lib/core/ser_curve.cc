@@ -13,7 +13,7 @@ constexpr double pi = 3.141592653589793;
 
 /// Clenshaw's recurrence for Σ c_k T_k(t).
 template <std::size_t n>
-double chebyshev_sum(const std::array<double, n> &c, double t)
+double chebyshev_sum(const std::array<double, n>& c, double t)
 {
     double b1 = 0, b2 = 0;
     for (std::size_t k = n - 1; k > 0; --k) {
@@ -26,7 +26,7 @@ double chebyshev_sum(const std::array<double, n> &c, double t)
 
 /// Coefficients of the derivative with respect to t: c'_{k−1} = c'_{k+1} + 2k·c_k, the first halved.
 template <std::size_t n>
-std::array<double, n> derivative(const std::array<double, n> &c)
+std::array<double, n> derivative(const std::array<double, n>& c)
 {
     std::array<double, n> d{};
     for (std::size_t k = n - 1; k > 0; --k)
@@ -37,7 +37,7 @@ std::array<double, n> derivative(const std::array<double, n> &c)
 
 } // namespace
 
-const ser_curve::panel &ser_curve::coefficients(int floor_db) const
+const ser_curve::panel& ser_curve::coefficients(int floor_db) const
 {
     if (const auto known = d_panels.find(floor_db); known != d_panels.end())
         return known->second;
@@ -59,7 +59,7 @@ ser_curve::value ser_curve::at(double es_n0_db) const
 {
     const double db = std::clamp(es_n0_db, lowest_db, highest_db);
     const int floor_db = static_cast<int>(std::min(std::floor(db), highest_db - 1));
-    const auto &c = coefficients(floor_db);
+    const auto& c = coefficients(floor_db);
     const double t = 2 * (db - floor_db) - 1; // dt/d dB = 2
     const auto first = derivative(c);
     return {chebyshev_sum(c, t), 2 * chebyshev_sum(first, t), 4 * chebyshev_sum(derivative(first), t)};

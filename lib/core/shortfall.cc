@@ -17,7 +17,7 @@ constexpr double db_of_natural = 4.342944819032518276511289189166; // 10/ln 10
 
 } // namespace
 
-void snr_record::bin::merge(const bin &other)
+void snr_record::bin::merge(const bin& other)
 {
     const auto n = static_cast<double>(symbols), m = static_cast<double>(other.symbols);
     const double apart = other.mean - mean;
@@ -29,7 +29,7 @@ void snr_record::bin::merge(const bin &other)
     error_influence += other.error_influence;
 }
 
-void snr_record::add(const stretch &s)
+void snr_record::add(const stretch& s)
 {
     if (s.symbols == 0)
         return;
@@ -43,7 +43,7 @@ void snr_record::add(const stretch &s)
     while (d_bins.size() > most_bins) {
         ++d_width_exponent;
         std::map<long long, bin> wider;
-        for (const auto &[key, b] : d_bins)
+        for (const auto& [key, b] : d_bins)
             wider[key >> 1].merge(b);
         d_bins.swap(wider);
     }
@@ -52,7 +52,7 @@ void snr_record::add(const stretch &s)
 double snr_record::lowest_db() const
 {
     double least = ser_curve::highest_db;
-    for (const auto &entry : d_bins)
+    for (const auto& entry : d_bins)
         least = std::min(least, entry.second.mean);
     return least;
 }
@@ -60,23 +60,23 @@ double snr_record::lowest_db() const
 double snr_record::highest_db() const
 {
     double most = ser_curve::lowest_db;
-    for (const auto &entry : d_bins)
+    for (const auto& entry : d_bins)
         most = std::max(most, entry.second.mean);
     return most;
 }
 
-snr_record::expectation snr_record::at(const ser_curve &curve, double shift_db) const
+snr_record::expectation snr_record::at(const ser_curve& curve, double shift_db) const
 {
     struct term {
         double ln, slope;
-        const bin *from;
+        const bin* from;
     };
     std::vector<term> terms;
     terms.reserve(d_bins.size());
     double peak = -HUGE_VAL;
     const auto all = static_cast<double>(d_symbols);
-    for (const auto &entry : d_bins) {
-        const bin &b = entry.second;
+    for (const auto& entry : d_bins) {
+        const bin& b = entry.second;
         const auto n = static_cast<double>(b.symbols);
         const auto v = curve.at(b.mean - shift_db);
         // Spread within the bin, less what of it and of the spread among bins is the gauge's own error.
@@ -86,7 +86,7 @@ snr_record::expectation snr_record::at(const ser_curve &curve, double shift_db) 
         peak = std::max(peak, ln);
     }
     double sum = 0, slope = 0, variance = 0, covariance = 0;
-    for (const auto &t : terms) {
+    for (const auto& t : terms) {
         const double errors = std::exp(t.ln - peak); // in units of e^peak
         const auto n = static_cast<double>(t.from->symbols);
         const double pull = errors * t.slope / n; // of one symbol
@@ -101,7 +101,7 @@ snr_record::expectation snr_record::at(const ser_curve &curve, double shift_db) 
 namespace {
 
 /// x with Σ n·SER(γ − x) = errors; nothing where no shift within the curve's range does it.
-std::optional<double> shift_for(const snr_record &record, const ser_curve &curve, double errors)
+std::optional<double> shift_for(const snr_record& record, const ser_curve& curve, double errors)
 {
     if (!(errors > 0))
         return std::nullopt;
@@ -134,7 +134,7 @@ std::optional<double> shift_for(const snr_record &record, const ser_curve &curve
 
 } // namespace
 
-shortfall find_shortfall(const snr_record &record, const ser_curve &curve, const shortfall_question &asked)
+shortfall find_shortfall(const snr_record& record, const ser_curve& curve, const shortfall_question& asked)
 {
     shortfall answer;
     if (record.symbols() == 0)

@@ -6,13 +6,13 @@
 
 namespace halfplane {
 
-tally::tally(const signal_set &set)
+tally::tally(const signal_set& set)
     : sent(set.size(), 0), by_bit(set.label_bits(), 0), transitions(set.size()), d_labels(set.labels()),
       d_label_bits(set.label_bits())
 {
 }
 
-void tally::count(const std::uint16_t *sent_index, const std::uint16_t *decided, std::size_t n)
+void tally::count(const std::uint16_t* sent_index, const std::uint16_t* decided, std::size_t n)
 {
     for (std::size_t k = 0; k < n; ++k) {
         const auto from = sent_index[k], to = decided[k];
@@ -32,7 +32,7 @@ void tally::count(const std::uint16_t *sent_index, const std::uint16_t *decided,
     bits += std::uint64_t{n} * d_label_bits;
 }
 
-void tally::merge(const tally &later)
+void tally::merge(const tally& later)
 {
     symbols += later.symbols;
     symbol_errors += later.symbol_errors;

@@ -36,7 +36,7 @@ void transition_counts::grow()
 {
     std::vector<slot> old(std::max<std::size_t>(64, 2 * d_slots.size()), slot{0, 0});
     old.swap(d_slots);
-    for (const auto &s : old)
+    for (const auto& s : old)
         if (s.count != 0)
             d_slots[place(s.key)] = s;
 }
@@ -49,7 +49,7 @@ void transition_counts::add(std::uint16_t from, std::uint16_t to, std::uint64_t 
     }
     if (2 * (d_used + 1) > d_slots.size())
         grow();
-    auto &s = d_slots[place(key_of(from, to))];
+    auto& s = d_slots[place(key_of(from, to))];
     if (s.count == 0) {
         s.key = key_of(from, to);
         ++d_used;
@@ -57,11 +57,11 @@ void transition_counts::add(std::uint16_t from, std::uint16_t to, std::uint64_t 
     s.count += count;
 }
 
-void transition_counts::merge(const transition_counts &later)
+void transition_counts::merge(const transition_counts& later)
 {
     for (std::size_t k = 0; k < later.d_dense.size(); ++k)
         d_dense[k] += later.d_dense[k];
-    for (const auto &s : later.d_slots)
+    for (const auto& s : later.d_slots)
         if (s.count != 0)
             add(static_cast<std::uint16_t>(s.key >> 16), static_cast<std::uint16_t>(s.key), s.count);
 }
@@ -80,11 +80,11 @@ std::vector<transition> transition_counts::sorted() const
         if (d_dense[k] != 0)
             all.push_back(
                 {static_cast<std::uint16_t>(k / d_size), static_cast<std::uint16_t>(k % d_size), d_dense[k]});
-    for (const auto &s : d_slots)
+    for (const auto& s : d_slots)
         if (s.count != 0)
             all.push_back(
                 {static_cast<std::uint16_t>(s.key >> 16), static_cast<std::uint16_t>(s.key), s.count});
-    std::sort(all.begin(), all.end(), [](const transition &a, const transition &b) {
+    std::sort(all.begin(), all.end(), [](const transition& a, const transition& b) {
         return std::tie(a.from, a.to) < std::tie(b.from, b.to);
     });
     return all;

@@ -4,7 +4,7 @@
 
 namespace halfplane::link {
 
-const char *to_string(lock_state s) noexcept
+const char* to_string(lock_state s) noexcept
 {
     switch (s) {
     case lock_state::searching:

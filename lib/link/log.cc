@@ -14,7 +14,7 @@ namespace halfplane::link {
 namespace {
 
 /// Writes all or says how much of it: 0 and errno where even the first byte failed.
-std::size_t write_all(int file, const std::string &text)
+std::size_t write_all(int file, const std::string& text)
 {
     std::size_t done = 0;
     while (done < text.size()) {
@@ -53,7 +53,7 @@ void report_log::close()
     d_file = -1;
 }
 
-bool report_log::fail(const char *doing, int error)
+bool report_log::fail(const char* doing, int error)
 {
     d_error = d_path + ": " + doing + ": " + std::generic_category().message(error);
     d_failing = true;
@@ -78,7 +78,7 @@ bool report_log::open()
     return true;
 }
 
-bool report_log::write(const report &line)
+bool report_log::write(const report& line)
 {
     if (d_file < 0 && !open())
         return false;

@@ -17,12 +17,12 @@ namespace halfplane::link {
  * predicts: the watch's reporting half is its own.
  */
 struct reporter::impl {
-    impl(const signal_set &set, watch_options options, reporter_options how)
+    impl(const signal_set& set, watch_options options, reporter_options how)
         : measured(set, std::move(options)), how(std::move(how))
     {
     }
 
-    void put(watch::window &&w)
+    void put(watch::window&& w)
     {
         {
             const std::lock_guard held(slot_lock);
@@ -37,8 +37,8 @@ struct reporter::impl {
     }
 
     void work();
-    void make_report(watch::window &&w, bool final);
-    void note_failure(const char *what)
+    void make_report(watch::window&& w, bool final);
+    void note_failure(const char* what)
     {
         const std::lock_guard held(slot_lock);
         ++failures;
@@ -84,7 +84,7 @@ void reporter::impl::work()
     }
 }
 
-void reporter::impl::make_report(watch::window &&w, bool final)
+void reporter::impl::make_report(watch::window&& w, bool final)
 {
     try {
         auto made = measured.report_of(std::move(w), final);
@@ -95,14 +95,14 @@ void reporter::impl::make_report(watch::window &&w, bool final)
         }
         if (how.on_report)
             how.on_report(made);
-    } catch (const std::exception &e) {
+    } catch (const std::exception& e) {
         note_failure(e.what());
     } catch (...) {
         note_failure("something that is no exception was thrown");
     }
 }
 
-reporter::reporter(const signal_set &set, watch_options options, reporter_options how)
+reporter::reporter(const signal_set& set, watch_options options, reporter_options how)
 {
     // A day is far beyond use and keeps the clock's arithmetic within its range.
     if (!(how.least_interval >= 0 && how.least_interval <= 86400))
@@ -134,7 +134,7 @@ void reporter::stop()
         return;
     {
         const std::lock_guard counting(d->stream);
-        d->measured.close([this](watch::window &&w) { d->put(std::move(w)); }, true);
+        d->measured.close([this](watch::window&& w) { d->put(std::move(w)); }, true);
         const std::lock_guard held(d->slot_lock);
         d->stopping = true;
     }
@@ -143,22 +143,22 @@ void reporter::stop()
     d->running = false;
 }
 
-void reporter::add(const std::complex<float> *in,
-                   const reference_t *reference,
-                   const std::uint16_t *decided,
+void reporter::add(const std::complex<float>* in,
+                   const reference_t* reference,
+                   const std::uint16_t* decided,
                    std::size_t count)
 {
     const std::lock_guard held(d->stream);
-    d->measured.add(in, reference, decided, count, [this](watch::window &&w) { d->put(std::move(w)); });
+    d->measured.add(in, reference, decided, count, [this](watch::window&& w) { d->put(std::move(w)); });
 }
 
-void reporter::set_lock(const lock_status &status)
+void reporter::set_lock(const lock_status& status)
 {
     const std::lock_guard held(d->stream);
     d->measured.set_lock(status);
 }
 
-void reporter::set_input(const input_snr &input)
+void reporter::set_input(const input_snr& input)
 {
     const std::lock_guard held(d->stream);
     d->measured.set_input(input);

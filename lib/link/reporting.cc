@@ -27,9 +27,9 @@ std::string utc_now()
     return text;
 }
 
-report rates_of(const std::array<double, 4> &ser, const std::array<double, 4> &ber)
+report rates_of(const std::array<double, 4>& ser, const std::array<double, 4>& ber)
 {
-    static constexpr const char *names[] = {"exact", "facing", "union", "nearest"};
+    static constexpr const char* names[] = {"exact", "facing", "union", "nearest"};
     report all;
     for (std::size_t k = 0; k < 4; ++k) {
         report one = report::object();
@@ -42,12 +42,12 @@ report rates_of(const std::array<double, 4> &ser, const std::array<double, 4> &b
     return all;
 }
 
-std::array<const rung *, 4> in_order(const rates &r)
+std::array<const rung*, 4> in_order(const rates& r)
 {
     return {&r.exact, &r.facing, &r.union_bound, &r.nearest};
 }
 
-report rates_of(const rates &r)
+report rates_of(const rates& r)
 {
     std::array<double, 4> ser, ber;
     const auto rungs = in_order(r);
@@ -58,7 +58,7 @@ report rates_of(const rates &r)
     return rates_of(ser, ber);
 }
 
-report rates_of(const expected_errors &e)
+report rates_of(const expected_errors& e)
 {
     std::array<double, 4> ser, ber;
     for (std::size_t k = 0; k < 4; ++k) {
@@ -68,7 +68,7 @@ report rates_of(const expected_errors &e)
     return rates_of(ser, ber);
 }
 
-report lock_of(const lock_status &lock)
+report lock_of(const lock_status& lock)
 {
     report out;
     out["state"] = to_string(lock.state);
@@ -82,7 +82,7 @@ report lock_of(const lock_status &lock)
     return out;
 }
 
-report shortfall_of(const shortfall &s)
+report shortfall_of(const shortfall& s)
 {
     report out;
     if (s.db)
@@ -94,7 +94,7 @@ report shortfall_of(const shortfall &s)
     return out;
 }
 
-void put_interval(report &out, const std::string &name, double rate, const interval &ends)
+void put_interval(report& out, const std::string& name, double rate, const interval& ends)
 {
     out[name] = rate;
     if (ends.low)
@@ -104,7 +104,7 @@ void put_interval(report &out, const std::string &name, double rate, const inter
 
 } // namespace
 
-void expected_errors::add(const predictor &p, double es_n0, const tally &counts)
+void expected_errors::add(const predictor& p, double es_n0, const tally& counts)
 {
     const auto r = p.at(es_n0);
     const auto rungs_in_order = in_order(r);
@@ -124,7 +124,7 @@ void expected_errors::add(const predictor &p, double es_n0, const tally &counts)
     }
 }
 
-watch::reporting::reporting(const signal_set &set, watch_options options)
+watch::reporting::reporting(const signal_set& set, watch_options options)
     : d_set(set), d_options(std::move(options)), d_predictor(set, std::make_shared<awgn>(), d_options.rule),
       d_curve(d_predictor), d_digest(sha256(settings().dump())), d_counts(set), d_waiting_counts(set)
 {
@@ -164,7 +164,7 @@ interval watch::reporting::run_intervals::ser(std::uint64_t errors, std::uint64_
  * Bit errors are a sum of N clumps, N itself dispersed: Var = E[N]·(Var h + D·E[h]²), so that the dispersion
  * of the sum is Σh²/Σh + (D − 1)·h̄.
  */
-interval watch::reporting::run_intervals::ber(const tally &counts) const
+interval watch::reporting::run_intervals::ber(const tally& counts) const
 {
     double clumping = counts.bit_dispersion();
     if (counts.symbol_errors > 0)
@@ -175,7 +175,7 @@ interval watch::reporting::run_intervals::ber(const tally &counts) const
     return clumped_interval(counts.bit_errors, counts.bits, clumping, confidence);
 }
 
-void watch::reporting::add_prediction(const window &w)
+void watch::reporting::add_prediction(const window& w)
 {
     d_waiting_counts.merge(w.counts);
     d_waiting_fit.merge(w.fit);
@@ -205,14 +205,14 @@ std::optional<expected_errors> watch::reporting::prediction_of_run() const
 
 namespace {
 
-snr_record::stretch stretch_of(const gauge_result &fit, std::uint64_t symbols)
+snr_record::stretch stretch_of(const gauge_result& fit, std::uint64_t symbols)
 {
     return {symbols, to_db(fit.es_n0), fit.es_n0_db_se * fit.es_n0_db_se, fit.error_influence};
 }
 
 } // namespace
 
-void watch::reporting::add_stretch(const window &w)
+void watch::reporting::add_stretch(const window& w)
 {
     d_open_stretch.merge(w.fit);
     if (d_open_stretch.count() < stretch_symbols || !d_open_stretch.solve(d_set))
@@ -223,9 +223,9 @@ void watch::reporting::add_stretch(const window &w)
     d_open_stretch = {};
 }
 
-void watch::reporting::add_input(const window &w)
+void watch::reporting::add_input(const window& w)
 {
-    for (const auto &part : w.inputs) {
+    for (const auto& part : w.inputs) {
         d_at_input.add({part.symbols, part.input.es_n0_db, 0, 0});
         d_errors_at_input += part.errors;
         d_input_variance_sum +=
@@ -233,7 +233,7 @@ void watch::reporting::add_input(const window &w)
     }
 }
 
-std::optional<shortfall> watch::reporting::at_decision(const run_intervals &ends) const
+std::optional<shortfall> watch::reporting::at_decision(const run_intervals& ends) const
 {
     auto record = d_at_decision;
     auto rest = d_last_stretch;
@@ -255,7 +255,7 @@ std::optional<shortfall> watch::reporting::at_decision(const run_intervals &ends
                            ends.confidence});
 }
 
-std::optional<shortfall> watch::reporting::at_input(const run_intervals &ends) const
+std::optional<shortfall> watch::reporting::at_input(const run_intervals& ends) const
 {
     const auto n = d_at_input.symbols();
     if (n == 0)
@@ -269,9 +269,9 @@ std::optional<shortfall> watch::reporting::at_input(const run_intervals &ends) c
                            ends.confidence});
 }
 
-report watch::reporting::counts_and_gauge(const tally &counts,
-                                          const std::optional<gauge_result> &fit,
-                                          const run_intervals &ends) const
+report watch::reporting::counts_and_gauge(const tally& counts,
+                                          const std::optional<gauge_result>& fit,
+                                          const run_intervals& ends) const
 {
     report out;
     out["symbols"] = counts.symbols;
@@ -303,25 +303,25 @@ report watch::reporting::counts_and_gauge(const tally &counts,
     return out;
 }
 
-report watch::reporting::transitions(const std::optional<expected_errors> &expected,
-                                     std::uint64_t &unlisted) const
+report watch::reporting::transitions(const std::optional<expected_errors>& expected,
+                                     std::uint64_t& unlisted) const
 {
     auto all = d_counts.transitions.sorted();
     unlisted = 0;
     if (all.size() > most_transitions) {
         const auto cut = all.begin() + most_transitions;
-        std::nth_element(all.begin(), cut, all.end(), [](const transition &a, const transition &b) {
+        std::nth_element(all.begin(), cut, all.end(), [](const transition& a, const transition& b) {
             return a.count > b.count;
         });
         for (auto t = cut; t != all.end(); ++t)
             unlisted += t->count;
         all.erase(cut, all.end());
-        std::sort(all.begin(), all.end(), [](const transition &a, const transition &b) {
+        std::sort(all.begin(), all.end(), [](const transition& a, const transition& b) {
             return a.from != b.from ? a.from < b.from : a.to < b.to;
         });
     }
     report rows = report::array();
-    for (const auto &t : all) {
+    for (const auto& t : all) {
         report row = {t.from, t.to, t.count};
         if (expected && !expected->transitions.empty())
             row.push_back(expected->transitions[t.from * d_set.size() + t.to]);
@@ -330,9 +330,9 @@ report watch::reporting::transitions(const std::optional<expected_errors> &expec
     return rows;
 }
 
-report watch::reporting::total(const window &w,
-                               const std::optional<gauge_result> &fit,
-                               const run_intervals &ends) const
+report watch::reporting::total(const window& w,
+                               const std::optional<gauge_result>& fit,
+                               const run_intervals& ends) const
 {
     report out = counts_and_gauge(d_counts, fit, ends);
     const auto in = d_counts.accounted() + w.pending;
@@ -363,7 +363,7 @@ report watch::reporting::total(const window &w,
     return out;
 }
 
-report watch::reporting::report_of(window &&w, bool final)
+report watch::reporting::report_of(window&& w, bool final)
 {
     d_counts.merge(w.counts);
     d_fit.merge(w.fit);
@@ -407,7 +407,7 @@ report watch::reporting::report_of(window &&w, bool final)
                         {"source", d_input->measured ? "measured" : "declared"}};
     }
     report shortfalls;
-    for (const auto &[place, found] :
+    for (const auto& [place, found] :
          {std::pair{"decision", at_decision(ends)}, std::pair{"input", at_input(ends)}})
         if (found)
             if (auto ends_found = shortfall_of(*found); !ends_found.empty())

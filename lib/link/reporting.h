@@ -18,7 +18,7 @@ struct expected_errors {
     std::uint64_t symbols = 0;       ///< n: judged symbols spoken of
     std::vector<double> transitions; ///< Σ n_i·P(j|i), row by row; empty for large sets
 
-    void add(const predictor &p, double es_n0, const tally &counts);
+    void add(const predictor& p, double es_n0, const tally& counts);
 };
 
 struct watch::reporting {
@@ -30,29 +30,29 @@ struct watch::reporting {
     /// Judged symbols gauged together for the shortfall: fewer, and the scatter of the gauge bends the curve.
     static constexpr std::uint64_t stretch_symbols = 10000;
 
-    reporting(const signal_set &set, watch_options options);
-    report report_of(window &&w, bool final);
+    reporting(const signal_set& set, watch_options options);
+    report report_of(window&& w, bool final);
     nlohmann::json settings() const;
 
 private:
-    void add_prediction(const window &w);
-    void add_stretch(const window &w);
-    void add_input(const window &w);
+    void add_prediction(const window& w);
+    void add_stretch(const window& w);
+    void add_input(const window& w);
     std::optional<expected_errors> prediction_of_run() const;
 
     struct run_intervals {
         double dispersion = 1; ///< of error counts over blocks
         double confidence;
         interval ser(std::uint64_t errors, std::uint64_t symbols) const;
-        interval ber(const tally &counts) const;
+        interval ber(const tally& counts) const;
     };
-    report counts_and_gauge(const tally &counts,
-                            const std::optional<gauge_result> &fit,
-                            const run_intervals &ends) const;
-    report total(const window &w, const std::optional<gauge_result> &fit, const run_intervals &ends) const;
-    report transitions(const std::optional<expected_errors> &expected, std::uint64_t &unlisted) const;
-    std::optional<shortfall> at_decision(const run_intervals &ends) const;
-    std::optional<shortfall> at_input(const run_intervals &ends) const;
+    report counts_and_gauge(const tally& counts,
+                            const std::optional<gauge_result>& fit,
+                            const run_intervals& ends) const;
+    report total(const window& w, const std::optional<gauge_result>& fit, const run_intervals& ends) const;
+    report transitions(const std::optional<expected_errors>& expected, std::uint64_t& unlisted) const;
+    std::optional<shortfall> at_decision(const run_intervals& ends) const;
+    std::optional<shortfall> at_input(const run_intervals& ends) const;
 
     const signal_set d_set;
     const watch_options d_options;

@@ -28,7 +28,7 @@ constexpr word rotated(word x, int by)
     return x >> by | x << (32 - by);
 }
 
-void compress(std::array<word, 8> &hash, const unsigned char *block)
+void compress(std::array<word, 8>& hash, const unsigned char* block)
 {
     std::array<word, 64> w;
     for (std::size_t t = 0; t < 16; ++t)
@@ -74,7 +74,7 @@ std::string sha256(std::string_view bytes)
     std::array<word, 8> hash = {
         0x6a09e667, 0xbb67ae85, 0x3c6ef372, 0xa54ff53a, 0x510e527f, 0x9b05688c, 0x1f83d9ab, 0x5be0cd19};
     for (std::size_t k = 0; k < padded.size(); k += 64)
-        compress(hash, reinterpret_cast<const unsigned char *>(padded.data()) + k);
+        compress(hash, reinterpret_cast<const unsigned char*>(padded.data()) + k);
 
     std::string text;
     for (const word x : hash)

@@ -19,7 +19,7 @@ using kernels::point_decider;
 constexpr std::size_t chunk = 1024;
 
 template <typename... Parts>
-[[noreturn]] void refuse(const Parts &...parts)
+[[noreturn]] void refuse(const Parts&... parts)
 {
     std::ostringstream text;
     text.precision(10);
@@ -27,7 +27,7 @@ template <typename... Parts>
     throw std::invalid_argument(text.str());
 }
 
-void check(const watch_options &o)
+void check(const watch_options& o)
 {
     if (o.window < 1)
         refuse("window must be at least 1 symbol, got ", o.window);
@@ -37,14 +37,14 @@ void check(const watch_options &o)
         refuse("symbol_rate must be a number of Hz, or 0 where unknown, got ", o.symbol_rate);
 }
 
-bool same(const input_snr &a, const input_snr &b)
+bool same(const input_snr& a, const input_snr& b)
 {
     return a.es_n0_db == b.es_n0_db && a.es_n0_db_se == b.es_n0_db_se && a.measured == b.measured;
 }
 
 } // namespace
 
-void watch::window::merge(window &&later)
+void watch::window::merge(window&& later)
 {
     counts.merge(later.counts);
     fit.merge(later.fit);
@@ -54,7 +54,7 @@ void watch::window::merge(window &&later)
         lock = later.lock;
     if (later.input)
         input = later.input;
-    for (const auto &part : later.inputs)
+    for (const auto& part : later.inputs)
         if (!inputs.empty() && same(inputs.back().input, part.input)) {
             inputs.back().symbols += part.symbols;
             inputs.back().errors += part.errors;
@@ -64,7 +64,7 @@ void watch::window::merge(window &&later)
 }
 
 struct watch::counting {
-    counting(const signal_set &s, const watch_options &o)
+    counting(const signal_set& s, const watch_options& o)
         : set(s), receiver_decisions(o.receiver_decisions), window_length(o.window), open(s)
     {
         map = o.rule == detector::map || (o.rule == detector::automatic && !s.uniform());
@@ -72,21 +72,21 @@ struct watch::counting {
             decider.emplace(set);
     }
 
-    void take(const std::complex<float> *in,
-              const reference_t *reference,
-              const std::uint16_t *received,
+    void take(const std::complex<float>* in,
+              const reference_t* reference,
+              const std::uint16_t* received,
               std::size_t n);
-    void judge(const std::complex<float> *in,
-               const std::uint16_t *sent,
-               const std::uint16_t *decided,
+    void judge(const std::complex<float>* in,
+               const std::uint16_t* sent,
+               const std::uint16_t* decided,
                std::size_t n);
-    void take_with_exclusions(const std::complex<float> *in,
-                              const reference_t *reference,
-                              const std::uint16_t *decided,
+    void take_with_exclusions(const std::complex<float>* in,
+                              const reference_t* reference,
+                              const std::uint16_t* decided,
                               std::size_t n);
-    void close(const window_handler &on_window);
+    void close(const window_handler& on_window);
     void follow_noise(double n0);
-    void take_next_input(const window_handler &on_window);
+    void take_next_input(const window_handler& on_window);
 
     const signal_set set;
     const bool receiver_decisions;
@@ -103,9 +103,9 @@ struct watch::counting {
 };
 
 /// Counts symbols that are all finite and have a reference each.
-void watch::counting::judge(const std::complex<float> *in,
-                            const std::uint16_t *sent,
-                            const std::uint16_t *decided,
+void watch::counting::judge(const std::complex<float>* in,
+                            const std::uint16_t* sent,
+                            const std::uint16_t* decided,
                             std::size_t n)
 {
     const auto errors_before = open.counts.symbol_errors;
@@ -120,9 +120,9 @@ void watch::counting::judge(const std::complex<float> *in,
     open.inputs.back().errors += open.counts.symbol_errors - errors_before;
 }
 
-void watch::counting::take(const std::complex<float> *in,
-                           const reference_t *reference,
-                           const std::uint16_t *received,
+void watch::counting::take(const std::complex<float>* in,
+                           const reference_t* reference,
+                           const std::uint16_t* received,
                            std::size_t n)
 {
     const auto size = static_cast<int>(set.size());
@@ -142,14 +142,14 @@ void watch::counting::take(const std::complex<float> *in,
     for (std::size_t k = 0; k < n; ++k)
         plain &= reference[k] >= 0 && reference[k] < size && decided[k] != point_decider::nonfinite;
     if (plain)
-        judge(in, reinterpret_cast<const std::uint16_t *>(reference), decided.data(), n);
+        judge(in, reinterpret_cast<const std::uint16_t*>(reference), decided.data(), n);
     else
         take_with_exclusions(in, reference, decided.data(), n);
 }
 
-void watch::counting::take_with_exclusions(const std::complex<float> *in,
-                                           const reference_t *reference,
-                                           const std::uint16_t *decided,
+void watch::counting::take_with_exclusions(const std::complex<float>* in,
+                                           const reference_t* reference,
+                                           const std::uint16_t* decided,
                                            std::size_t n)
 {
     const auto size = static_cast<int>(set.size());
@@ -189,7 +189,7 @@ void watch::counting::follow_noise(double n0)
     map_n0 = n0;
 }
 
-void watch::counting::close(const window_handler &on_window)
+void watch::counting::close(const window_handler& on_window)
 {
     open.blocks = blocks;
     open.lock = lock;
@@ -205,7 +205,7 @@ void watch::counting::close(const window_handler &on_window)
     on_window(std::move(done));
 }
 
-void watch::counting::take_next_input(const window_handler &on_window)
+void watch::counting::take_next_input(const window_handler& on_window)
 {
     if (!next_input)
         return;
@@ -217,7 +217,7 @@ void watch::counting::take_next_input(const window_handler &on_window)
         follow_noise(set.es() / from_db(input->es_n0_db));
 }
 
-watch::watch(const signal_set &set, watch_options options)
+watch::watch(const signal_set& set, watch_options options)
 {
     check(options);
     d_count = std::make_unique<counting>(set, options);
@@ -225,15 +225,15 @@ watch::watch(const signal_set &set, watch_options options)
 }
 
 watch::~watch() = default;
-watch::watch(watch &&) noexcept = default;
+watch::watch(watch&&) noexcept = default;
 
-void watch::add(const std::complex<float> *in,
-                const reference_t *reference,
-                const std::uint16_t *decided,
+void watch::add(const std::complex<float>* in,
+                const reference_t* reference,
+                const std::uint16_t* decided,
                 std::size_t count,
-                const window_handler &on_window)
+                const window_handler& on_window)
 {
-    auto &c = *d_count;
+    auto& c = *d_count;
     if (c.receiver_decisions != (decided != nullptr))
         refuse(c.receiver_decisions ? "decisions of the receiver were promised and are missing"
                                     : "decisions were handed in, but `receiver_decisions` is off");
@@ -251,21 +251,21 @@ void watch::add(const std::complex<float> *in,
     }
 }
 
-void watch::close(const window_handler &on_window, bool even_empty)
+void watch::close(const window_handler& on_window, bool even_empty)
 {
-    auto &c = *d_count;
+    auto& c = *d_count;
     if (c.in_window == 0)
         c.take_next_input(on_window);
     if (c.in_window > 0 || even_empty)
         c.close(on_window);
 }
 
-void watch::set_lock(const lock_status &status)
+void watch::set_lock(const lock_status& status)
 {
     d_count->lock = status;
 }
 
-void watch::set_input(const input_snr &input)
+void watch::set_input(const input_snr& input)
 {
     if (!std::isfinite(input.es_n0_db))
         refuse("es_n0_db at the input must be finite, got ", input.es_n0_db);
@@ -284,7 +284,7 @@ std::uint64_t watch::handed_in() const noexcept
     return d_count->handed;
 }
 
-report watch::report_of(window &&w, bool final)
+report watch::report_of(window&& w, bool final)
 {
     return d_report->report_of(std::move(w), final);
 }

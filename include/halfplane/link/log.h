@@ -27,24 +27,24 @@ public:
     /// last_error().
     explicit report_log(std::string path);
     ~report_log();
-    report_log(const report_log &) = delete;
-    report_log &operator=(const report_log &) = delete;
+    report_log(const report_log&) = delete;
+    report_log& operator=(const report_log&) = delete;
 
     /// Whether the line is on disk.
-    bool write(const report &line);
+    bool write(const report& line);
 
-    const std::string &path() const noexcept { return d_path; }
+    const std::string& path() const noexcept { return d_path; }
     std::uint64_t written() const noexcept { return d_written; }
     std::uint64_t failed() const noexcept { return d_failed; }
     /// Whether the last attempt failed; true turns to false with the first line that goes through again.
     bool failing() const noexcept { return d_failing; }
     /// What the last failure was: "report.jsonl: No space left on device". Empty while there was none.
-    const std::string &last_error() const noexcept { return d_error; }
+    const std::string& last_error() const noexcept { return d_error; }
 
 private:
     bool open();
     void close();
-    bool fail(const char *doing, int error);
+    bool fail(const char* doing, int error);
 
     std::string d_path;
     int d_file = -1;

@@ -16,7 +16,7 @@ struct reporter_options {
     /// Seconds from one report to the next at least; 0: as fast as predictions come.
     double least_interval = 0.1;
     /// Called with each report on the worker's thread. What it throws is counted and goes no further.
-    std::function<void(const report &)> on_report;
+    std::function<void(const report&)> on_report;
 };
 
 /*!
@@ -30,20 +30,20 @@ class reporter
 public:
     /// Starts the worker. \throws std::invalid_argument as watch does, or where least_interval is negative or
     /// not finite
-    reporter(const signal_set &set, watch_options options, reporter_options how = {});
+    reporter(const signal_set& set, watch_options options, reporter_options how = {});
     /// Stops first.
     ~reporter();
-    reporter(const reporter &) = delete;
-    reporter &operator=(const reporter &) = delete;
+    reporter(const reporter&) = delete;
+    reporter& operator=(const reporter&) = delete;
 
     /// As watch::add(); never waits for a prediction. After stop() symbols are still counted, and reported by
     /// the next start() or stop().
-    void add(const std::complex<float> *in,
-             const reference_t *reference,
-             const std::uint16_t *decided,
+    void add(const std::complex<float>* in,
+             const reference_t* reference,
+             const std::uint16_t* decided,
              std::size_t count);
-    void set_lock(const lock_status &status);
-    void set_input(const input_snr &input);
+    void set_lock(const lock_status& status);
+    void set_input(const input_snr& input);
     void set_pending(std::uint64_t pending);
 
     /// The last report that was made.

@@ -55,7 +55,7 @@ class watch
 public:
     /// Everything one window, or a run of merged windows, has to say before prediction.
     struct window {
-        explicit window(const signal_set &set) : counts(set) {}
+        explicit window(const signal_set& set) : counts(set) {}
         std::uint64_t first_symbol = 0; ///< place in the stream handed in, from 0
         tally counts;
         halfplane::gauge fit;
@@ -69,14 +69,14 @@ public:
         };
         std::vector<input_part> inputs;
         std::optional<input_snr> input; ///< last known
-        void merge(window &&later);
+        void merge(window&& later);
     };
-    using window_handler = std::function<void(window &&)>;
+    using window_handler = std::function<void(window&&)>;
 
     /// \throws std::invalid_argument naming the option and its value
-    watch(const signal_set &set, watch_options options);
+    watch(const signal_set& set, watch_options options);
     ~watch();
-    watch(watch &&) noexcept;
+    watch(watch&&) noexcept;
 
     /*!
      * Samples and references of equal length, and decisions with `receiver_decisions` (else null). Calls
@@ -84,18 +84,18 @@ public:
      * no index of the set and no exclusion code: names place and value; the whole 1,024 symbols about it are
      * left uncounted
      */
-    void add(const std::complex<float> *in,
-             const reference_t *reference,
-             const std::uint16_t *decided,
+    void add(const std::complex<float>* in,
+             const reference_t* reference,
+             const std::uint16_t* decided,
              std::size_t count,
-             const window_handler &on_window);
+             const window_handler& on_window);
     /// Closes the window that is open, if it holds anything; an empty one too where so asked.
-    void close(const window_handler &on_window, bool even_empty = false);
+    void close(const window_handler& on_window, bool even_empty = false);
 
-    void set_lock(const lock_status &status);
+    void set_lock(const lock_status& status);
     /// A declared value that differs from the one before closes the window that is open, at the next add().
     /// \throws std::invalid_argument unless finite, with a standard error ≥ 0
-    void set_input(const input_snr &input);
+    void set_input(const input_snr& input);
     /// Symbols that the link took in and has not handed over yet (the aligner's hold-back).
     void set_pending(std::uint64_t pending);
     /// Symbols handed in so far.
@@ -103,7 +103,7 @@ public:
 
     /// Adds a window to the totals, evaluates the rungs, returns the report; `final` marks it as the run's
     /// last.
-    report report_of(window &&w, bool final = false);
+    report report_of(window&& w, bool final = false);
 
     /// What must be equal for two runs to be one: the document whose digest the report carries.
     nlohmann::json settings() const;
