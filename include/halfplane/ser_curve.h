@@ -11,8 +11,8 @@
 namespace halfplane {
 
 /*!
- * ln SER of one predictor's exact rung, interpolated by Chebyshev polynomials of degree 15 on panels of 1 dB
- * that are made when first asked for: 16 evaluations a panel, whatever the number of questions. For sets
+ * ln SER of one predictor's exact rung, interpolated by Chebyshev polynomials of degree 11 on panels of 1 dB
+ * that are made when first asked for: 12 evaluations a panel, whatever the number of questions. For sets
  * under nearest-point decisions the relative error of SER is below `accuracy` · max(1, |ln SER|); under MAP,
  * where a cell appears or vanishes within a panel, the slope has a kink and 1e-6 is typical. Not thread-safe:
  * it learns while asked.
@@ -35,7 +35,7 @@ public:
     value at(double es_n0_db) const;
 
 private:
-    static constexpr std::size_t nodes = 16;
+    static constexpr std::size_t nodes = 12;
     using panel = std::array<double, nodes>;
     const panel& coefficients(int floor_db) const;
 

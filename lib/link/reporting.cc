@@ -104,10 +104,9 @@ void put_interval(report& out, const std::string& name, double rate, const inter
 
 } // namespace
 
-void expected_errors::add(const predictor& p, double es_n0, const tally& counts)
+void expected_errors::add(const predictor& p, const rates& at_es_n0, double es_n0, const tally& counts)
 {
-    const auto r = p.at(es_n0);
-    const auto rungs_in_order = in_order(r);
+    const auto rungs_in_order = in_order(at_es_n0);
     const auto n = static_cast<long double>(counts.symbols);
     for (std::size_t k = 0; k < rungs; ++k) {
         symbol[k] += n * rungs_in_order[k]->ser;
@@ -175,6 +174,13 @@ interval watch::reporting::run_intervals::ber(const tally& counts) const
     return clumped_interval(counts.bit_errors, counts.bits, clumping, confidence);
 }
 
+const rates& watch::reporting::rates_at(double es_n0) const
+{
+    if (!d_last_rates || d_last_rates->first != es_n0)
+        d_last_rates.emplace(es_n0, d_predictor.at(es_n0));
+    return d_last_rates->second;
+}
+
 void watch::reporting::add_prediction(const window& w)
 {
     d_waiting_counts.merge(w.counts);
@@ -182,7 +188,7 @@ void watch::reporting::add_prediction(const window& w)
     if (!w.fit.solve(d_set))
         return;
     if (const auto fit = d_waiting_fit.solve(d_set)) {
-        d_expected.add(d_predictor, fit->es_n0, d_waiting_counts);
+        d_expected.add(d_predictor, rates_at(fit->es_n0), fit->es_n0, d_waiting_counts);
         d_waiting_counts = tally(d_set);
         d_waiting_fit = {};
     }
@@ -196,7 +202,7 @@ std::optional<expected_errors> watch::reporting::prediction_of_run() const
         const auto fit = d_fit.solve(d_set);
         if (!fit)
             return std::nullopt;
-        all.add(d_predictor, fit->es_n0, d_waiting_counts);
+        all.add(d_predictor, rates_at(fit->es_n0), fit->es_n0, d_waiting_counts);
     }
     if (all.symbols == 0)
         return std::nullopt;
@@ -397,7 +403,7 @@ report watch::reporting::report_of(window&& w, bool final)
     report window_part = {{"first_symbol", w.first_symbol}};
     window_part.update(counts_and_gauge(w.counts, fit, ends));
     if (fit)
-        window_part["predicted"] = rates_of(d_predictor.at(fit->es_n0));
+        window_part["predicted"] = rates_of(rates_at(fit->es_n0));
     out["window"] = std::move(window_part);
     out["total"] = total(w, d_fit.solve(d_set), ends);
 

@@ -18,7 +18,7 @@ struct expected_errors {
     std::uint64_t symbols = 0;       ///< n: judged symbols spoken of
     std::vector<double> transitions; ///< Σ n_i·P(j|i), row by row; empty for large sets
 
-    void add(const predictor& p, double es_n0, const tally& counts);
+    void add(const predictor& p, const rates& at_es_n0, double es_n0, const tally& counts);
 };
 
 struct watch::reporting {
@@ -35,6 +35,8 @@ struct watch::reporting {
     nlohmann::json settings() const;
 
 private:
+    /// The rungs at this Es/N0; the last answer is kept, as window and run mostly ask for the same.
+    const rates& rates_at(double es_n0) const;
     void add_prediction(const window& w);
     void add_stretch(const window& w);
     void add_input(const window& w);
@@ -59,6 +61,7 @@ private:
     const predictor d_predictor;
     const ser_curve d_curve;
     const std::string d_digest;
+    mutable std::optional<std::pair<double, rates>> d_last_rates;
 
     // The run so far.
     std::uint64_t d_sequence = 0;
