@@ -29,14 +29,14 @@ struct candidate_map::workshop {
         std::size_t square;
         box where;
         candidates list;
-        bool operator<(const crowded &other) const { return weight < other.weight; }
+        bool operator<(const crowded& other) const { return weight < other.weight; }
     };
     std::map<candidates, std::uint16_t> known_lists;
     std::priority_queue<crowded> crowds;
     double weight = 1; // of the frame being filled: the chance that a sample falls there, roughly
 };
 
-candidate_map::candidate_map(const signal_set &set, const std::vector<double> &bias)
+candidate_map::candidate_map(const signal_set& set, const std::vector<double>& bias)
 {
     double size = 0, constant = 0;
     for (std::size_t i = 0; i < set.size(); ++i) {
@@ -83,7 +83,7 @@ detect_view candidate_map::view() const noexcept
     return d_view;
 }
 
-std::size_t candidate_map::add_frame(const square_frame &f)
+std::size_t candidate_map::add_frame(const square_frame& f)
 {
     d_frames.push_back(f);
     d_frames.back().first = static_cast<std::uint32_t>(d_entries.size());
@@ -95,7 +95,7 @@ void candidate_map::lay_main_grid(std::size_t squares_wanted)
 {
     const double infinity = std::numeric_limits<double>::infinity();
     box hull{infinity, -infinity, infinity, -infinity};
-    for (const point_metric &m : d_metrics) {
+    for (const point_metric& m : d_metrics) {
         hull.x0 = std::min(hull.x0, m.re), hull.x1 = std::max(hull.x1, m.re);
         hull.y0 = std::min(hull.y0, m.im), hull.y1 = std::max(hull.y1, m.im);
     }
@@ -184,12 +184,12 @@ void candidate_map::lay_shells()
 }
 
 void candidate_map::fill(std::size_t frame,
-                         const box &cover,
+                         const box& cover,
                          unsigned ix,
                          unsigned nx,
                          unsigned iy,
                          unsigned ny,
-                         const candidates &in)
+                         const candidates& in)
 {
     const square_frame f = d_frames[frame];
     box where{f.x0 + (ix - overlap) / f.sx,
@@ -221,7 +221,7 @@ void candidate_map::fill(std::size_t frame,
     }
 }
 
-void candidate_map::settle(std::size_t square, const box &where, const candidates &list)
+void candidate_map::settle(std::size_t square, const box& where, const candidates& list)
 {
     d_entries[square] = link_of(list);
     // In the endless shell a square stands for a whole cone and cannot be refined.
@@ -234,7 +234,7 @@ void candidate_map::lay_children()
     for (std::size_t laid = 0; laid < child_frames && !d_tools->crowds.empty() && !d_overflow;) {
         const workshop::crowded crowd = d_tools->crowds.top();
         d_tools->crowds.pop();
-        const box &where = crowd.where;
+        const box& where = crowd.where;
         double spread = 0;
         for (const std::uint16_t i : crowd.list)
             spread = std::max({spread,
@@ -261,7 +261,7 @@ void candidate_map::lay_children()
     }
 }
 
-std::uint16_t candidate_map::link_of(const candidates &list)
+std::uint16_t candidate_map::link_of(const candidates& list)
 {
     const auto known = d_tools->known_lists.find(list);
     if (known != d_tools->known_lists.end())
@@ -277,24 +277,24 @@ std::uint16_t candidate_map::link_of(const candidates &list)
     return id;
 }
 
-double candidate_map::blur(const box &where) const
+double candidate_map::blur(const box& where) const
 {
     const double x = std::max(std::abs(where.x0), std::abs(where.x1));
     const double y = std::max(std::abs(where.y0), std::abs(where.y1));
     return d_blur_slope * (x + y) + d_blur_constant;
 }
 
-candidate_map::candidates candidate_map::prune(const box &where, const candidates &in) const
+candidate_map::candidates candidate_map::prune(const box& where, const candidates& in) const
 {
     const double mx = (where.x0 + where.x1) / 2, hx = (where.x1 - where.x0) / 2;
     const double my = (where.y0 + where.y1) / 2, hy = (where.y1 - where.y0) / 2;
     const double blurred = blur(where);
 
-    const auto winner = [&](double x, double y, const candidates &among) {
+    const auto winner = [&](double x, double y, const candidates& among) {
         std::uint16_t best = among[0];
         double top = -std::numeric_limits<double>::infinity();
         for (const std::uint16_t i : among) {
-            const point_metric &m = d_metrics[i];
+            const point_metric& m = d_metrics[i];
             const double value = x * m.re + y * m.im + m.constant;
             if (value > top)
                 top = value, best = i;
@@ -303,10 +303,10 @@ candidate_map::candidates candidate_map::prune(const box &where, const candidate
     };
     candidates left = in, kept;
     const auto strike = [&](std::uint16_t by) {
-        const point_metric &w = d_metrics[by];
+        const point_metric& w = d_metrics[by];
         kept.clear();
         for (const std::uint16_t j : left) {
-            const point_metric &m = d_metrics[j];
+            const point_metric& m = d_metrics[j];
             const double dx = w.re - m.re, dy = w.im - m.im;
             const double lead =
                 dx * mx + dy * my + (w.constant - m.constant) - std::abs(dx) * hx - std::abs(dy) * hy;

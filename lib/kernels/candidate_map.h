@@ -27,7 +27,7 @@ class candidate_map
 {
 public:
     /// \param bias M additive terms of the metric (MAP), or empty
-    candidate_map(const signal_set &set, const std::vector<double> &bias);
+    candidate_map(const signal_set& set, const std::vector<double>& bias);
 
     /// Pointers into this object, for the loops. Valid while it lives and stays where it is.
     detect_view view() const noexcept;
@@ -42,17 +42,17 @@ private:
     void lay_shells();
     void lay_children();
     void fill(std::size_t frame,
-              const box &cover,
+              const box& cover,
               unsigned ix,
               unsigned nx,
               unsigned iy,
               unsigned ny,
-              const candidates &in);
-    void settle(std::size_t square, const box &where, const candidates &list);
-    double blur(const box &where) const;
-    candidates prune(const box &where, const candidates &in) const;
-    std::uint16_t link_of(const candidates &list);
-    std::size_t add_frame(const square_frame &f);
+              const candidates& in);
+    void settle(std::size_t square, const box& where, const candidates& list);
+    double blur(const box& where) const;
+    candidates prune(const box& where, const candidates& in) const;
+    std::uint16_t link_of(const candidates& list);
+    std::size_t add_frame(const square_frame& f);
 
     std::vector<point_metric> d_metrics;
     std::vector<square_frame> d_frames;
@@ -60,7 +60,7 @@ private:
     std::vector<candidate_link> d_links;
     std::vector<std::uint16_t> d_lists;
     struct workshop;
-    workshop *d_tools = nullptr; // while building only
+    workshop* d_tools = nullptr; // while building only
     detect_view d_view{};
     double d_blur_slope = 0, d_blur_constant = 0; // what rounding can do to a difference of two metrics
     bool d_endless = false;                       // the frame being filled reaches to infinity

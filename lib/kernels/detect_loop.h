@@ -9,14 +9,14 @@ namespace HALFPLANE_TARGET {
 
 namespace detect_detail {
 
-inline double metric(const point_metric &m, double x, double y)
+inline double metric(const point_metric& m, double x, double y)
 {
     return x * m.re + y * m.im + m.constant;
 }
 
 /// The best of `count` ascending candidates; the earlier one on a tie.
 inline std::uint16_t
-best(const detect_view &v, const std::uint16_t *candidates, std::size_t count, double x, double y)
+best(const detect_view& v, const std::uint16_t* candidates, std::size_t count, double x, double y)
 {
     std::uint16_t winner = candidates[0];
     double top = metric(v.metrics[winner], x, y);
@@ -28,7 +28,7 @@ best(const detect_view &v, const std::uint16_t *candidates, std::size_t count, d
     return winner;
 }
 
-inline std::uint16_t best_of_all(const detect_view &v, double x, double y)
+inline std::uint16_t best_of_all(const detect_view& v, double x, double y)
 {
     std::size_t winner = 0;
     double top = metric(v.metrics[0], x, y);
@@ -56,7 +56,7 @@ inline double power_of_two(int exponent) // −1022 … 1023
 }
 
 /// Entry of a finite sample in the shells around the main grid.
-inline std::uint16_t shell_entry(const detect_view &v, double x, double y)
+inline std::uint16_t shell_entry(const detect_view& v, double x, double y)
 {
     const double u = (x - v.cx) * v.inverse_half_x, w = (y - v.cy) * v.inverse_half_y;
     const double reach = __builtin_fmax(__builtin_fabs(u), __builtin_fabs(w));
@@ -75,7 +75,7 @@ inline std::uint16_t shell_entry(const detect_view &v, double x, double y)
 }
 
 /// Follows an open entry to a decision.
-inline std::uint16_t resolve(const detect_view &v, std::uint16_t entry, float in_x, float in_y)
+inline std::uint16_t resolve(const detect_view& v, std::uint16_t entry, float in_x, float in_y)
 {
     if (!(__builtin_fabsf(in_x) <= __FLT_MAX__ && __builtin_fabsf(in_y) <= __FLT_MAX__))
         return detect_view::outside;
@@ -86,7 +86,7 @@ inline std::uint16_t resolve(const detect_view &v, std::uint16_t entry, float in
         const candidate_link link = v.links[entry - detect_view::open];
         if (link.count)
             return best(v, v.lists + link.at, link.count, x, y);
-        const square_frame &f = v.frames[link.at];
+        const square_frame& f = v.frames[link.at];
         entry = v.entries[f.first + clamp_square((x - f.x0) * f.sx, f.width) +
                           clamp_square((y - f.y0) * f.sy, f.height) * f.width];
     }
@@ -95,7 +95,7 @@ inline std::uint16_t resolve(const detect_view &v, std::uint16_t entry, float in
 
 } // namespace detect_detail
 
-void decide(const detect_view &v, const float *in, std::uint16_t *out, std::size_t count)
+void decide(const detect_view& v, const float* in, std::uint16_t* out, std::size_t count)
 {
     using namespace detect_detail;
     if (v.scan_all) {

@@ -30,12 +30,12 @@ struct detect_view {
     static constexpr std::uint16_t outside = 0xffff;
     static constexpr std::uint32_t max_links = 0x7ffe;
 
-    const point_metric *metrics;
+    const point_metric* metrics;
     std::size_t size; // points
-    const std::uint16_t *entries;
-    const candidate_link *links;
-    const std::uint16_t *lists;
-    const square_frame *frames;
+    const std::uint16_t* entries;
+    const candidate_link* links;
+    const std::uint16_t* lists;
+    const square_frame* frames;
 
     // Main grid: entries[0 …], its coordinates in float.
     float x0, y0, sx, sy, last_x, last_y;

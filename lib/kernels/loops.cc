@@ -4,6 +4,7 @@
 // keeps for all.
 #include "loops.h"
 
+#include "count_loop.h"
 #include "detect_loop.h"
 #include "noise_loop.h"
 
@@ -11,7 +12,13 @@ namespace halfplane::kernels {
 namespace HALFPLANE_TARGET {
 
 extern const loop_table table;
-const loop_table table = {HALFPLANE_TARGET_NAME, decide, noise};
+const loop_table table = {HALFPLANE_TARGET_NAME,
+                          decide,
+                          noise,
+                          random_words,
+                          find_errors,
+                          count_label_errors_16,
+                          count_label_errors_8};
 
 } // namespace HALFPLANE_TARGET
 } // namespace halfplane::kernels

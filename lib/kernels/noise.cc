@@ -22,14 +22,14 @@ float amplitude(double n0)
 
 complex_noise::complex_noise(std::uint64_t seed, std::uint64_t stream) : d_seed(seed), d_stream(stream) {}
 
-void complex_noise::draw(std::uint64_t first, std::size_t count, double n0, std::complex<float> *out) const
+void complex_noise::draw(std::uint64_t first, std::size_t count, double n0, std::complex<float>* out) const
 {
-    loops().noise(d_seed, d_stream, first, count, amplitude(n0), false, reinterpret_cast<float *>(out));
+    loops().noise(d_seed, d_stream, first, count, amplitude(n0), false, reinterpret_cast<float*>(out));
 }
 
-void complex_noise::add(std::uint64_t first, std::size_t count, double n0, std::complex<float> *out) const
+void complex_noise::add(std::uint64_t first, std::size_t count, double n0, std::complex<float>* out) const
 {
-    loops().noise(d_seed, d_stream, first, count, amplitude(n0), true, reinterpret_cast<float *>(out));
+    loops().noise(d_seed, d_stream, first, count, amplitude(n0), true, reinterpret_cast<float*>(out));
 }
 
 std::complex<double> complex_noise::reference(std::uint64_t k) const

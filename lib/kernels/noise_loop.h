@@ -55,48 +55,22 @@ inline float minus_log(float t, bool from_one)
     return -(static_cast<float>(e) * 0.693147180559945f + log_m);
 }
 
-/// 32 random bits a and b for each of n (even) samples from the even sample number `first` on.
-inline void words(std::uint64_t seed,
-                  std::uint64_t stream,
-                  std::uint64_t first,
-                  std::size_t n,
-                  std::uint32_t *__restrict a,
-                  std::uint32_t *__restrict b)
-{
-    const std::uint64_t pair = first / 2;
-    const std::uint32_t low = static_cast<std::uint32_t>(pair), high = static_cast<std::uint32_t>(pair >> 32);
-    const std::uint32_t s0 = static_cast<std::uint32_t>(stream),
-                        s1 = static_cast<std::uint32_t>(stream >> 32);
-    const std::uint32_t key_0 = static_cast<std::uint32_t>(seed),
-                        key_1 = static_cast<std::uint32_t>(seed >> 32);
-    for (std::size_t j = 0; j < n / 2; ++j) {
-        std::uint32_t c0 = low + static_cast<std::uint32_t>(j);
-        std::uint32_t c1 = high + (c0 < low ? 1u : 0u);
-        std::uint32_t c2 = s0, c3 = s1, k0 = key_0, k1 = key_1;
-#pragma GCC unroll 10
-        for (int r = 0; r < philox::rounds; ++r) {
-            const std::uint64_t p0 = std::uint64_t{philox::multiplier_0} * c0;
-            const std::uint64_t p1 = std::uint64_t{philox::multiplier_1} * c2;
-            c0 = static_cast<std::uint32_t>(p1 >> 32) ^ c1 ^ k0;
-            c1 = static_cast<std::uint32_t>(p1);
-            c2 = static_cast<std::uint32_t>(p0 >> 32) ^ c3 ^ k1;
-            c3 = static_cast<std::uint32_t>(p0);
-            k0 += philox::weyl_0, k1 += philox::weyl_1;
-        }
-        a[2 * j] = c0, b[2 * j] = c1;
-        a[2 * j + 1] = c2, b[2 * j + 1] = c3;
+struct block_key {
+    std::uint32_t s0, s1, k0, k1;
+    block_key(std::uint64_t seed, std::uint64_t stream)
+        : s0(static_cast<std::uint32_t>(stream)), s1(static_cast<std::uint32_t>(stream >> 32)),
+          k0(static_cast<std::uint32_t>(seed)), k1(static_cast<std::uint32_t>(seed >> 32))
+    {
     }
-}
+};
 
-/// The 32 further bits of a sample whose radius word began with twelve zeros.
-inline std::uint32_t fine_word(std::uint64_t seed, std::uint64_t stream, std::uint64_t k)
+/// philox::block on scalars, in the form that the vectoriser takes.
+inline void
+philox_block(const block_key& key, std::uint32_t& c0, std::uint32_t& c1, std::uint32_t& c2, std::uint32_t& c3)
 {
-    const std::uint32_t counter[4] = {static_cast<std::uint32_t>(k),
-                                      static_cast<std::uint32_t>(k >> 32) | 0x80000000u,
-                                      static_cast<std::uint32_t>(stream),
-                                      static_cast<std::uint32_t>(stream >> 32)};
-    std::uint32_t c0 = counter[0], c1 = counter[1], c2 = counter[2], c3 = counter[3];
-    std::uint32_t k0 = static_cast<std::uint32_t>(seed), k1 = static_cast<std::uint32_t>(seed >> 32);
+    c2 = key.s0, c3 = key.s1;
+    std::uint32_t k0 = key.k0, k1 = key.k1;
+#pragma GCC unroll 10
     for (int r = 0; r < philox::rounds; ++r) {
         const std::uint64_t p0 = std::uint64_t{philox::multiplier_0} * c0;
         const std::uint64_t p1 = std::uint64_t{philox::multiplier_1} * c2;
@@ -106,12 +80,41 @@ inline std::uint32_t fine_word(std::uint64_t seed, std::uint64_t stream, std::ui
         c3 = static_cast<std::uint32_t>(p0);
         k0 += philox::weyl_0, k1 += philox::weyl_1;
     }
+}
+
+/// 32 random bits a and b for each of n (even) samples from the even sample number `first` on.
+inline void words(std::uint64_t seed,
+                  std::uint64_t stream,
+                  std::uint64_t first,
+                  std::size_t n,
+                  std::uint32_t* __restrict a,
+                  std::uint32_t* __restrict b)
+{
+    const std::uint64_t pair = first / 2;
+    const std::uint32_t low = static_cast<std::uint32_t>(pair), high = static_cast<std::uint32_t>(pair >> 32);
+    const block_key key(seed, stream);
+    for (std::size_t j = 0; j < n / 2; ++j) {
+        std::uint32_t c0 = low + static_cast<std::uint32_t>(j);
+        std::uint32_t c1 = high + (c0 < low ? 1u : 0u);
+        std::uint32_t c2, c3;
+        philox_block(key, c0, c1, c2, c3);
+        a[2 * j] = c0, b[2 * j] = c1;
+        a[2 * j + 1] = c2, b[2 * j + 1] = c3;
+    }
+}
+
+/// The 32 further bits of a sample whose radius word began with twelve zeros.
+inline std::uint32_t fine_word(std::uint64_t seed, std::uint64_t stream, std::uint64_t k)
+{
+    std::uint32_t c0 = static_cast<std::uint32_t>(k), c1 = static_cast<std::uint32_t>(k >> 32) | 0x80000000u,
+                  c2, c3;
+    philox_block(block_key(seed, stream), c0, c1, c2, c3);
     return c0;
 }
 
 /// CN(0, 1) samples from the even sample number `first` on, n ≤ block and even.
 inline void unit_samples(
-    std::uint64_t seed, std::uint64_t stream, std::uint64_t first, std::size_t n, float *__restrict z)
+    std::uint64_t seed, std::uint64_t stream, std::uint64_t first, std::size_t n, float* __restrict z)
 {
     alignas(64) std::uint32_t radius[block], angle[block];
     alignas(64) float t[block];
@@ -158,7 +161,7 @@ void noise(std::uint64_t seed,
            std::size_t count,
            float scale,
            bool add,
-           float *out)
+           float* out)
 {
     using namespace noise_detail;
     alignas(64) float z[2 * block];
@@ -166,7 +169,7 @@ void noise(std::uint64_t seed,
         const std::size_t skip = first & 1;
         const std::size_t n = count < block - skip ? count : block - skip;
         unit_samples(seed, stream, first - skip, (n + skip + 1) & ~std::size_t{1}, z);
-        const float *from = z + 2 * skip;
+        const float* from = z + 2 * skip;
         if (add)
             for (std::size_t k = 0; k < 2 * n; ++k)
                 out[k] += scale * from[k];
@@ -174,6 +177,30 @@ void noise(std::uint64_t seed,
             for (std::size_t k = 0; k < 2 * n; ++k)
                 out[k] = scale * from[k];
         out += 2 * n, first += n, count -= n;
+    }
+}
+
+void random_words(
+    std::uint64_t seed, std::uint64_t stream, std::uint64_t first, std::size_t count, std::uint32_t* out)
+{
+    using namespace noise_detail;
+    const block_key key(seed, stream);
+    alignas(64) std::uint32_t w[4 * block / 4];
+    while (count > 0) {
+        const std::size_t skip = first % 4;
+        const std::size_t n = count < block - skip ? count : block - skip;
+        const std::uint64_t counter = first / 4;
+        const std::uint32_t low = static_cast<std::uint32_t>(counter);
+        const std::uint32_t high = static_cast<std::uint32_t>(counter >> 32);
+        for (std::size_t j = 0; j < block / 4; ++j) {
+            std::uint32_t c0 = low + static_cast<std::uint32_t>(j);
+            std::uint32_t c1 = high + (c0 < low ? 1u : 0u);
+            std::uint32_t c2, c3;
+            philox_block(key, c0, c1, c2, c3);
+            w[4 * j] = c0, w[4 * j + 1] = c1, w[4 * j + 2] = c2, w[4 * j + 3] = c3;
+        }
+        __builtin_memcpy(out, w + skip, n * sizeof *out);
+        out += n, first += n, count -= n;
     }
 }
 

@@ -23,10 +23,10 @@ extern const loop_table table;
 }
 #endif
 
-const std::vector<const loop_table *> &usable_loops()
+const std::vector<const loop_table*>& usable_loops()
 {
-    static const std::vector<const loop_table *> usable = [] {
-        std::vector<const loop_table *> found{&baseline::table};
+    static const std::vector<const loop_table*> usable = [] {
+        std::vector<const loop_table*> found{&baseline::table};
 #ifdef HALFPLANE_X86_TARGETS
         __builtin_cpu_init();
         const bool has_v2 = __builtin_cpu_supports("sse4.2") && __builtin_cpu_supports("ssse3") &&
@@ -49,19 +49,19 @@ const std::vector<const loop_table *> &usable_loops()
 }
 
 namespace {
-std::atomic<const loop_table *> chosen{nullptr};
+std::atomic<const loop_table*> chosen{nullptr};
 }
 
-const loop_table &loops() noexcept
+const loop_table& loops() noexcept
 {
-    const loop_table *table = chosen.load(std::memory_order_acquire);
+    const loop_table* table = chosen.load(std::memory_order_acquire);
     return table ? *table : *usable_loops().back();
 }
 
 std::vector<std::string> usable_targets()
 {
     std::vector<std::string> names;
-    for (const loop_table *table : usable_loops())
+    for (const loop_table* table : usable_loops())
         names.emplace_back(table->target);
     return names;
 }
@@ -71,9 +71,9 @@ std::string target()
     return loops().target;
 }
 
-void use_target(const std::string &name)
+void use_target(const std::string& name)
 {
-    for (const loop_table *table : usable_loops())
+    for (const loop_table* table : usable_loops())
         if (name == table->target) {
             chosen.store(table, std::memory_order_release);
             return;

@@ -22,18 +22,18 @@ public:
     static constexpr std::uint16_t nonfinite = 0xffff;
 
     /// Nearest point (ML). The set is copied.
-    explicit point_decider(const signal_set &set);
+    explicit point_decider(const signal_set& set);
     /// MAP at noise density n0 (> 0, finite, in the square of the points' unit). \throws
     /// std::invalid_argument
-    point_decider(const signal_set &set, double n0);
+    point_decider(const signal_set& set, double n0);
     ~point_decider();
-    point_decider(point_decider &&) noexcept;
-    point_decider &operator=(point_decider &&) noexcept;
+    point_decider(point_decider&&) noexcept;
+    point_decider& operator=(point_decider&&) noexcept;
 
     /// `count` samples in, `count` indices out (0 … M−1, or `nonfinite`). Thread-safe.
-    void decide(const std::complex<float> *in, std::uint16_t *out, std::size_t count) const;
+    void decide(const std::complex<float>* in, std::uint16_t* out, std::size_t count) const;
     /// The readable reference: all points, double precision.
-    void decide_reference(const std::complex<float> *in, std::uint16_t *out, std::size_t count) const;
+    void decide_reference(const std::complex<float>* in, std::uint16_t* out, std::size_t count) const;
 
 private:
     struct impl;

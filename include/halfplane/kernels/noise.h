@@ -29,9 +29,9 @@ public:
     explicit complex_noise(std::uint64_t seed, std::uint64_t stream = 0);
     /// Writes samples first … first + count − 1, each of variance n0 (≥ 0, finite), n0/2 a real dimension.
     /// \throws std::invalid_argument where n0 is negative or not finite
-    void draw(std::uint64_t first, std::size_t count, double n0, std::complex<float> *out) const;
+    void draw(std::uint64_t first, std::size_t count, double n0, std::complex<float>* out) const;
     /// The same, added to what stands in `out`.
-    void add(std::uint64_t first, std::size_t count, double n0, std::complex<float> *out) const;
+    void add(std::uint64_t first, std::size_t count, double n0, std::complex<float>* out) const;
     /// The readable reference: one sample, unit n0, in double.
     std::complex<double> reference(std::uint64_t k) const;
 

@@ -13,6 +13,6 @@ std::vector<std::string> usable_targets();
 /// The one in use, from the start the last of usable_targets().
 std::string target();
 /// Switches the whole process, for tests and comparisons. \throws std::invalid_argument where not usable
-void use_target(const std::string &name);
+void use_target(const std::string& name);
 
 } // namespace halfplane::kernels
