@@ -32,7 +32,7 @@ float nudged(float x, int steps)
 
 /// The kinds of sample that a decision by table could get wrong.
 struct sample_source {
-    const signal_set &set;
+    const signal_set& set;
     std::mt19937_64 bits;
 
     double uniform() { return std::uniform_real_distribution<double>(0, 1)(bits); }
@@ -87,7 +87,7 @@ struct sample_source {
     {
         const std::uint64_t pattern = bits();
         sample r;
-        std::memcpy(static_cast<void *>(&r), &pattern, sizeof r);
+        std::memcpy(static_cast<void*>(&r), &pattern, sizeof r);
         return r;
     }
     sample broken()
@@ -126,8 +126,8 @@ struct sample_source {
     }
 };
 
-void expect_equal_decisions(const signal_set &set,
-                            const point_decider &decider,
+void expect_equal_decisions(const signal_set& set,
+                            const point_decider& decider,
                             std::size_t count,
                             unsigned seed)
 {
@@ -138,7 +138,7 @@ void expect_equal_decisions(const signal_set &set,
     std::vector<std::uint16_t> expected(count), decided(count);
     decider.decide_reference(in.data(), expected.data(), count);
     const std::string before = kernels::target();
-    for (const std::string &target : kernels::usable_targets()) {
+    for (const std::string& target : kernels::usable_targets()) {
         kernels::use_target(target);
         std::fill(decided.begin(), decided.end(), std::uint16_t{0x7777});
         decider.decide(in.data(), decided.data(), count);
@@ -177,17 +177,17 @@ TEST(detect, equals_brute_force_on_small_sets)
 {
     // 900,000 samples a set; with the other tests of this file more than 1e7.
     unsigned seed = 100;
-    for (const signal_set &set : small_sets())
+    for (const signal_set& set : small_sets())
         expect_equal_decisions(set, point_decider(set), 900000, ++seed);
 }
 
 TEST(detect, equals_brute_force_on_large_sets)
 {
     unsigned seed = 200;
-    for (const signal_set &set :
+    for (const signal_set& set :
          {sample_sets::grid(8, 8), sample_sets::random(256, 3), sample_sets::ring(256)})
         expect_equal_decisions(set, point_decider(set), 200000, ++seed);
-    for (const signal_set &set : {sample_sets::grid(32, 32),
+    for (const signal_set& set : {sample_sets::grid(32, 32),
                                   sample_sets::grid(64, 64),
                                   sample_sets::random(4096, 4),
                                   sample_sets::ring(4096)})
@@ -197,7 +197,7 @@ TEST(detect, equals_brute_force_on_large_sets)
 TEST(detect, equals_brute_force_with_priors)
 {
     unsigned seed = 300;
-    for (const signal_set &plain :
+    for (const signal_set& plain :
          {sample_sets::grid(4, 4), sample_sets::two_rings(4, 8, 2.1), sample_sets::random(33, 5)})
         for (const double strength : {0.1, 1.0, 5.0}) {
             const signal_set set = sample_sets::with_shaped_priors(plain, strength);
@@ -229,11 +229,11 @@ TEST(detect, equals_brute_force_on_awkward_sets)
             nested.push_back(std::polar(std::pow(0.1, level), 0.1 * level + 2 * M_PI * i / 9));
     sets.push_back(signal_set::with_natural_labels(nested, "nested"));
     std::vector<complex> spiky = sample_sets::random(200, 6).points();
-    for (complex &s : spiky)
+    for (complex& s : spiky)
         s *= 1e-4;
     spiky.emplace_back(1, 1), spiky.emplace_back(-3, 0.5), spiky.emplace_back(100, 0);
     sets.push_back(signal_set::with_natural_labels(spiky, "cluster"));
-    for (const signal_set &set : sets)
+    for (const signal_set& set : sets)
         expect_equal_decisions(set, point_decider(set), 27000, ++seed);
     std::printf("samples compared with brute force so far: %llu\n",
                 static_cast<unsigned long long>(samples_compared));
@@ -251,7 +251,7 @@ TEST(detect, awkward_lengths_and_unaligned_arrays)
                 in[k] = source.next(static_cast<unsigned>(k));
             std::vector<std::uint16_t> expected(count), decided(count + shift + 4, 0x7777);
             decider.decide_reference(in.data() + shift, expected.data(), count);
-            for (const std::string &target : kernels::usable_targets()) {
+            for (const std::string& target : kernels::usable_targets()) {
                 kernels::use_target(target);
                 decider.decide(in.data() + shift, decided.data() + shift, count);
                 EXPECT_TRUE(

@@ -64,7 +64,7 @@ TEST(noise, every_target_draws_the_same_floats_and_follows_the_construction)
             }
             EXPECT_LT(worst, complex_noise::relative_accuracy);
             std::printf("worst relative error of a sample: %.2e\n", worst);
-            for (const std::string &target : targets()) {
+            for (const std::string& target : targets()) {
                 kernels::use_target(target);
                 noise.draw(first, count, 2.0, drawn.data());
                 EXPECT_EQ(drawn, plain) << target;
@@ -77,7 +77,7 @@ TEST(noise, any_stretch_can_be_drawn_anywhere)
     const complex_noise noise(42, 7);
     std::vector<sample> whole(200000);
     noise.draw(0, whole.size(), 1.0, whole.data());
-    for (const std::string &target : targets()) {
+    for (const std::string& target : targets()) {
         kernels::use_target(target);
         for (const std::size_t first : {0u, 1u, 255u, 256u, 1001u})
             for (const std::size_t count : {0u, 1u, 7u, 255u, 1023u, 131071u}) {
@@ -141,7 +141,7 @@ TEST(noise, moments_and_tails)
         }
     }
     const double n = 2.0 * count;
-    const auto report = [](const char *what, double z_score) {
+    const auto report = [](const char* what, double z_score) {
         std::printf("%-32s z = %+.2f\n", what, z_score);
         EXPECT_LT(std::abs(z_score), z_limit) << what;
     };

@@ -48,13 +48,13 @@ inline signal_set random(std::size_t m, unsigned seed)
     std::mt19937_64 bits(seed);
     std::normal_distribution<double> normal;
     std::vector<complex> points(m);
-    for (complex &s : points)
+    for (complex& s : points)
         s = {normal(bits), normal(bits)};
     return signal_set::with_natural_labels(points, "random-" + std::to_string(m));
 }
 
 /// Unequal priors, p_i ∝ exp(−strength·|s_i|²/Es).
-inline signal_set with_shaped_priors(const signal_set &set, double strength)
+inline signal_set with_shaped_priors(const signal_set& set, double strength)
 {
     std::vector<double> priors;
     double sum = 0;
@@ -62,7 +62,7 @@ inline signal_set with_shaped_priors(const signal_set &set, double strength)
         priors.push_back(std::exp(-strength * std::norm(s) / set.es()));
         sum += priors.back();
     }
-    for (double &p : priors)
+    for (double& p : priors)
         p /= sum;
     return set.with_priors(priors).renamed(set.name() + "-shaped");
 }
