@@ -10,6 +10,8 @@ PYBIND11_MODULE(blocks_python, m)
     py::module::import("pmt");
     py::module::import("gnuradio.gr");
     py::module::import("gnuradio.halfplane.core_python");
+    bind_noise_at(m);
+    bind_point_detector(m);
     bind_point_mapper(m);
     bind_report_pmt(m);
     bind_test_pattern(m);
