@@ -154,7 +154,9 @@ shortfall find_shortfall(const snr_record& record, const ser_curve& curve, const
             answer.high = *x_high + one_sided * sigma_at(*x_high);
         return answer;
     }
-    const auto x_low = asked.ser.low ? shift_for(record, curve, n * *asked.ser.low) : std::nullopt;
+    std::optional<double> x_low;
+    if (asked.ser.low)
+        x_low = shift_for(record, curve, n * *asked.ser.low);
     const auto x = shift_for(record, curve, static_cast<double>(asked.errors));
     if (!x) {
         if (x_low)

@@ -22,16 +22,22 @@ struct reporter::impl {
     {
     }
 
+    /// Under `slot_lock`.
+    void put_in_slot(watch::window&& w)
+    {
+        if (slot) {
+            slot->merge(std::move(w));
+            ++merged;
+        } else {
+            slot.emplace(std::move(w));
+        }
+    }
+
     void put(watch::window&& w)
     {
         {
             const std::lock_guard held(slot_lock);
-            if (slot) {
-                slot->merge(std::move(w));
-                ++merged;
-            } else {
-                slot.emplace(std::move(w));
-            }
+            put_in_slot(std::move(w));
         }
         changed.notify_one();
     }
@@ -74,7 +80,7 @@ void reporter::impl::work()
             changed.wait(held, [&] { return slot || stopping; });
             changed.wait_until(held, due, [&] { return stopping; });
             taken.swap(slot);
-            final = stopping; // stop() filled the slot before it said so
+            final = stopping;
         }
         due = clock::now() + interval;
         if (taken)
@@ -134,8 +140,10 @@ void reporter::stop()
         return;
     {
         const std::lock_guard counting(d->stream);
-        d->measured.close([this](watch::window&& w) { d->put(std::move(w)); }, true);
+        // The last window and the word that it is the last reach the worker together: else it might report
+        // the one and, with nothing left to say, miss the other.
         const std::lock_guard held(d->slot_lock);
+        d->measured.close([this](watch::window&& w) { d->put_in_slot(std::move(w)); }, true);
         d->stopping = true;
     }
     d->changed.notify_one();
