@@ -6,6 +6,7 @@
 
 #include "count_loop.h"
 #include "detect_loop.h"
+#include "llr_loop.h"
 #include "noise_loop.h"
 
 namespace halfplane::kernels {
@@ -18,7 +19,8 @@ const loop_table table = {HALFPLANE_TARGET_NAME,
                           random_words,
                           find_errors,
                           count_label_errors_16,
-                          count_label_errors_8};
+                          count_label_errors_8,
+                          llr};
 
 } // namespace HALFPLANE_TARGET
 } // namespace halfplane::kernels

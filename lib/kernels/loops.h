@@ -3,6 +3,7 @@
 #pragma once
 
 #include "detect_view.h"
+#include "llr_view.h"
 
 #include <cstddef>
 #include <cstdint>
@@ -47,6 +48,14 @@ struct loop_table {
                                  const std::uint8_t* decided,
                                  std::size_t count,
                                  label_error_sums& to);
+    /// `decided` the nearest points, 0xffff for samples that are not finite; `scratch` of view.scratch()
+    /// floats.
+    void (*llr)(const llr_view& view,
+                const float* in,
+                const std::uint16_t* decided,
+                float* out,
+                std::size_t count,
+                float* scratch);
 };
 
 /// Tables that this processor can run, the plainest first.
