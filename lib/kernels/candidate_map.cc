@@ -13,6 +13,7 @@ namespace {
 // Squares are widened by this part of their side before points are struck, on every side. It covers the
 // rounding of (x − x0)·sx in float: at most width·2^-23 ≤ 2.5e-4 for the widest main grid.
 constexpr double overlap = 1e-3;
+constexpr std::size_t squares_a_point = 256;
 constexpr unsigned widest = 2048;
 constexpr unsigned child_squares = 8;
 constexpr std::size_t long_list = 6; // beyond, a child frame is wanted
@@ -54,7 +55,8 @@ candidate_map::candidate_map(const signal_set& set, const std::vector<double>& b
     d_view.size = set.size();
     d_view.scan_all = !(size < largest_magnitude && size > 1 / largest_magnitude && constant < 1e200);
     if (!d_view.scan_all) {
-        for (std::size_t squares = std::clamp<std::size_t>(64 * set.size(), 1024, 1u << 17);; squares /= 4) {
+        for (std::size_t squares = std::clamp<std::size_t>(squares_a_point * set.size(), 1024, 1u << 17);;
+             squares /= 4) {
             workshop tools;
             d_tools = &tools;
             d_frames.clear(), d_entries.clear(), d_links.clear(), d_lists.clear();
@@ -254,7 +256,7 @@ void candidate_map::lay_children()
                                              child_squares,
                                              0});
         d_entries[crowd.square] = static_cast<std::uint16_t>(detect_view::open + d_links.size());
-        d_links.push_back({static_cast<std::uint32_t>(child), 0});
+        d_links.push_back({static_cast<std::uint32_t>(child), 0, {}});
         d_tools->weight = crowd.weight / static_cast<double>(crowd.list.size()) / child_squares;
         fill(child, where, 0, child_squares, 0, child_squares, crowd.list);
         ++laid;
@@ -271,7 +273,11 @@ std::uint16_t candidate_map::link_of(const candidates& list)
         return detect_view::outside;
     }
     const auto id = static_cast<std::uint16_t>(detect_view::open + d_links.size());
-    d_links.push_back({static_cast<std::uint32_t>(d_lists.size()), static_cast<std::uint32_t>(list.size())});
+    candidate_link link{
+        static_cast<std::uint32_t>(d_lists.size()), static_cast<std::uint32_t>(list.size()), {}};
+    for (std::size_t k = 0; k < candidate_link::few_size; ++k)
+        link.few[k] = list[std::min(k, list.size() - 1)];
+    d_links.push_back(link);
     d_lists.insert(d_lists.end(), list.begin(), list.end());
     d_tools->known_lists.emplace(list, id);
     return id;

@@ -28,6 +28,20 @@ best(const detect_view& v, const std::uint16_t* candidates, std::size_t count, d
     return winner;
 }
 
+/// The best of four, or of fewer with the last one repeated. Compiled to selections: which one wins is a
+/// toss-up.
+inline std::uint16_t best_of_few(const detect_view& v, const std::uint16_t* candidates, double x, double y)
+{
+    double top = metric(v.metrics[candidates[0]], x, y);
+    std::uint32_t place = 0;
+    for (std::uint32_t i = 1; i < candidate_link::few_size; ++i) {
+        const double value = metric(v.metrics[candidates[i]], x, y);
+        place = value > top ? i : place;
+        top = value > top ? value : top;
+    }
+    return candidates[place];
+}
+
 inline std::uint16_t best_of_all(const detect_view& v, double x, double y)
 {
     std::size_t winner = 0;
@@ -132,7 +146,17 @@ void decide(const detect_view& v, const float* in, std::uint16_t* out, std::size
         }
         for (std::size_t j = 0; j < open; ++j) {
             const std::size_t k = undecided[j];
-            out[k] = resolve(v, out[k], in[2 * k], in[2 * k + 1]);
+            const std::uint16_t entry = out[k];
+            // Samples that are not finite are clamped to the outermost ring, which is all outside.
+            if (entry != detect_view::outside) {
+                const candidate_link& link = v.links[entry - detect_view::open];
+                if (link.count - 1 < candidate_link::few_size) {
+                    out[k] = best_of_few(
+                        v, link.few, static_cast<double>(in[2 * k]), static_cast<double>(in[2 * k + 1]));
+                    continue;
+                }
+            }
+            out[k] = resolve(v, entry, in[2 * k], in[2 * k + 1]);
         }
         in += 2 * n, out += n, count -= n;
     }

@@ -19,9 +19,12 @@ struct square_frame {
     std::uint32_t width, height, first;
 };
 
-/// What an open entry leads to: `count` candidates from `lists[at]` on, or frame `at` where count is 0.
+/// What an open entry leads to: `count` candidates from `lists[at]` on, or frame `at` where count is 0. Lists
+/// of up to four stand in `few` too, the last one repeated, so that they are settled without a branch.
 struct candidate_link {
+    static constexpr std::size_t few_size = 4;
     std::uint32_t at, count;
+    std::uint16_t few[few_size];
 };
 
 struct detect_view {

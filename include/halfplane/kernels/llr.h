@@ -40,7 +40,7 @@ class llr_decider
 {
 public:
     /// Largest error of a ratio, absolute or relative, whichever is larger, from −10 to 40 dB Es/N0.
-    static constexpr double accuracy = 1e-3;
+    static constexpr double accuracy = 1e-5;
 
     /// \param n0 noise density, > 0, finite, in the square of the points' unit
     /// \throws std::invalid_argument naming the value that is refused
