@@ -191,8 +191,8 @@ TEST(Information, OrderedAsTheoryHasIt)
         double last = 0;
         for (double db = -20; db <= 30; db += 1) {
             const auto i = information_at(set, linear(db));
-            EXPECT_LE(i.bmd_rate, i.mi + 1e-12) << name;
-            EXPECT_LE(i.mi, capacity(linear(db)) + 1e-12) << name;
+            EXPECT_LE(i.bmd_rate, i.mi + information_accuracy) << name;
+            EXPECT_LE(i.mi, capacity(linear(db)) + information_accuracy) << name;
             EXPECT_GE(i.mi, last - 1e-12) << name;
             last = i.mi;
         }
