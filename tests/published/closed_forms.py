@@ -42,11 +42,12 @@ def tail_of(law):
 
 def craig(tail, u, upper):
     """(1/pi) int_0^upper T(u / sin^2 t) dt, split where the integrand changes its scale."""
-    top = tail(u)
+    peak = min(upper, mp.pi / 2)
+    top = tail(u / mp.sin(peak) ** 2)
     width = 1 / mp.sqrt(u + 1)
     places = {mp.mpf(0), upper}
     for k in range(-8, 9):
-        for centre, size in ((mp.pi / 2, width), (mp.mpf(0), mp.sqrt(u)), (mp.pi, mp.sqrt(u))):
+        for centre, size in ((mp.pi / 2, width), (peak, 1 / (u + 1)), (mp.mpf(0), mp.sqrt(u)), (mp.pi, mp.sqrt(u))):
             for t in (centre + k * size / 2, centre + k * size * 4):
                 if 0 < t < upper:
                     places.add(t)
