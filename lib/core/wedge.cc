@@ -5,6 +5,8 @@
 #include "quadrature_rule.h"
 
 #include <algorithm>
+#include <cstdint>
+#include <cstring>
 #include <limits>
 
 namespace halfplane {
@@ -46,17 +48,45 @@ double hyperbolic_length(double h, double a, double b, double near)
     return std::asinh((b - a) * (a + b) / (b * near + a * std::hypot(h, b)));
 }
 
+/*!
+ * exp(x) for −700 < x < 1 to 3e-16, without branches or calls so that loops over nodes become vector code: 2^k by
+ * the exponent bits, the rest by its series to the 13th power at |r| ≤ ln 2/2.
+ */
+inline double vector_exp(double x)
+{
+    constexpr double shifter = 6755399441055744.0; // 1.5·2^52: adding it rounds to a whole number
+    const double shifted = x * 1.4426950408889634074 + shifter;
+    const double k = shifted - shifter;
+    const double r = (x - k * 6.93147180369123816490e-01) - k * 1.90821492927058770002e-10; // ln 2 in two parts
+    double p = 1 / 6227020800.0;
+    for (const double c : {1 / 479001600.0, 1 / 39916800.0, 1 / 3628800.0, 1 / 362880.0, 1 / 40320.0, 1 / 5040.0,
+                           1 / 720.0, 1 / 120.0, 1 / 24.0, 1 / 6.0, 0.5, 1.0, 1.0})
+        p = p * r + c;
+    std::int64_t bits, power;
+    std::memcpy(&bits, &p, sizeof bits);
+    std::memcpy(&power, &shifted, sizeof power);
+    bits += static_cast<std::int64_t>(static_cast<std::uint64_t>(power) << 52);
+    std::memcpy(&p, &bits, sizeof p);
+    return p;
+}
+
 template <int N>
 double cartesian(double h, double a, double length)
 {
     const auto& rule = quadrature_rule<N>::get();
-    double sum = 0;
+    double term[N];
     for (int k = 0; k < N; ++k) {
         const double u = length * rule.node[k];
         const double x = a + u;
-        sum += rule.weight[k] * std::exp(-u * (a + 0.5 * u)) / (h * h + x * x);
+        term[k] = rule.weight[k] * vector_exp(-u * (a + 0.5 * u)) / (h * h + x * x);
     }
-    return sum * length * h / two_pi;
+    // Two sums halve the wait on each addition.
+    double even = 0, odd = 0;
+    for (int k = 0; k < N; k += 2) {
+        even += term[k];
+        odd += term[k + 1];
+    }
+    return (even + odd) * length * h / two_pi;
 }
 
 /// Number of nodes by λ = length/distance (the pole at ±ih) and by the fall of the exponent over the edge.
@@ -107,7 +137,7 @@ double gaussian_side(double h, double a, double b)
     // Beyond √(a² + 2·drop) nothing is left; written so that b − a keeps its digits.
     const double reach = 2 * negligible_drop / (a + std::sqrt(a * a + 2 * negligible_drop));
     const double length = std::min(b - a, reach);
-    const double near = std::hypot(h, a);
+    const double near = std::sqrt(h * h + a * a);
     if (near == 0)
         return 0.25; // the mean on the edge: a right angle of the full circle
     const double lambda = length / near;
