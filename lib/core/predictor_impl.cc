@@ -74,12 +74,16 @@ diagram::diagram(const signal_set& set, std::vector<double> weights, const matri
 {
     if (whiten)
         regions = regions.mapped(*whiten);
-    walls = build_walls(regions, set.labels());
+    walls = build_walls(regions, set.labels(), set.label_bits());
     view.set = &set;
     view.regions = &regions;
     view.walls = &walls;
     view.weights = std::move(weights);
     view.whiten = whiten;
+    if (!moved()) {
+        repeated = find_repetitions(set, regions);
+        view.repeated = repeated.get();
+    }
     for (std::size_t i = 0; i < set.size(); ++i) {
         const complex p = set.points()[i];
         view.arrivals.push_back(moved() ? arriving(i, p, set.priors()[i])

@@ -32,7 +32,8 @@ public:
     scene displaced(std::vector<arrival> arrivals) const;
 
     cells regions;
-    std::vector<wall> walls;
+    wall_map walls;
+    std::unique_ptr<repetitions> repeated;
     scene view;
 
 private:

@@ -5,8 +5,11 @@
 #include "halfplane/wedge.h"
 
 #include <algorithm>
+#include <array>
 #include <cmath>
+#include <cstring>
 #include <limits>
+#include <map>
 
 namespace halfplane {
 
@@ -49,6 +52,22 @@ public:
     {
         const double w = (*this)({h, -inf, inf});
         return h >= 0 ? w : one() - w;
+    }
+
+    /// The distance at which the tail over the scale has fallen to exp(ln_ratio).
+    double distance_at(double ln_ratio) const
+    {
+        const double wanted = -(ln_ratio + d_ln_scale);
+        if (!d_noise.fading)
+            return std::sqrt(2 * wanted) / d_noise.per_unit;
+        double low = 0, high = 1;
+        while (d_noise.fading->ln_tail(high) > -wanted && high < 1e300)
+            high *= 4;
+        while (high - low > 0.01 * high) {
+            const double middle = 0.5 * (low + high);
+            (d_noise.fading->ln_tail(middle) > -wanted ? low : high) = middle;
+        }
+        return std::sqrt(2 * high) / d_noise.per_unit;
     }
 
     /// ln of tail at this squared distance over the scale.
@@ -94,15 +113,18 @@ void exact_ser(const scene& s, const scaled_wedge& w, rate_sums& out)
 {
     out.by_point.assign(s.set->size(), 0);
     std::vector<double> sent_weight(s.set->size(), 0);
-    if (s.undisplaced && s.weights.empty() && !s.whiten) {
-        // Both sides see an edge alike.
-        for (const auto& e : s.regions->edges()) {
-            const double p = w(e.seen_from(e.origin));
-            out.by_point[e.inner] += p;
-            out.by_point[e.outer] += p;
+    if (s.undisplaced && s.repeated) {
+        // Both sides see an edge alike, and so do many edges of a grid.
+        std::vector<double> p;
+        for (const auto& c : s.repeated->edge_classes) {
+            p.push_back(w(c.look));
+            out.exact.ser += c.weight * p.back();
         }
-        for (const auto& a : s.arrivals)
-            out.exact.ser += a.weight * out.by_point[a.sent];
+        for (std::size_t k = 0; k < s.regions->edges().size(); ++k) {
+            const auto& e = s.regions->edges()[k];
+            out.by_point[e.inner] += p[s.repeated->class_of_edge[k]];
+            out.by_point[e.outer] += p[s.repeated->class_of_edge[k]];
+        }
         return;
     }
     for (const auto& a : s.arrivals) {
@@ -116,32 +138,96 @@ void exact_ser(const scene& s, const scaled_wedge& w, rate_sums& out)
             out.by_point[i] /= sent_weight[i];
 }
 
-void exact_ber(const scene& s, const scaled_wedge& w, rate_sums& out)
+/// Half-planes by their distance: the walls of a grid repeat a few distances over and over.
+class half_plane_memory
 {
-    const unsigned bits = s.set->label_bits();
-    out.by_bit.assign(bits, 0);
-    std::vector<double> one_arrival(bits);
-    for (const auto& a : s.arrivals) {
-        const label_t sent = s.set->labels()[a.sent];
-        const label_t wrong_at_mean = sent ^ s.set->labels()[a.owner];
-        for (unsigned k = 0; k < bits; ++k)
-            one_arrival[k] = (wrong_at_mean >> k & 1) ? w.one() : 0;
-        for (const auto& border : *s.walls) {
+public:
+    explicit half_plane_memory(const scaled_wedge& w) : d_wedge(w), d_known(1024, {-1, 0}) {}
+    double operator()(const edge_view& v)
+    {
+        if (!std::isinf(v.from) || !std::isinf(v.to))
+            return d_wedge(v);
+        const double h = std::abs(v.height);
+        std::uint64_t bits;
+        std::memcpy(&bits, &h, sizeof bits);
+        auto& place = d_known[bits * 0x9E3779B97F4A7C15u >> 54];
+        if (place.first != h)
+            place = {h, d_wedge(v)};
+        return place.second;
+    }
+
+private:
+    const scaled_wedge& d_wedge;
+    std::vector<std::pair<double, double>> d_known;
+};
+
+/// Adds one arrival's wrong bits to by_bit (leftmost first), walls beyond `reach` left out.
+void add_wrong_bits(const scene& s,
+                    half_plane_memory& w,
+                    double one,
+                    const arrival& a,
+                    double reach,
+                    std::vector<double>& by_bit)
+{
+    const auto bits = static_cast<unsigned>(by_bit.size());
+    const label_t sent = s.set->labels()[a.sent];
+    const label_t wrong_at_mean = sent ^ s.set->labels()[a.owner];
+    double sum[signal_set::max_label_bits];
+    for (unsigned k = 0; k < bits; ++k)
+        sum[k] = (wrong_at_mean >> k & 1) ? one : 0;
+    for (const auto& block : s.walls->blocks) {
+        const double far = reach + block.radius;
+        if (std::norm(block.centre - a.mean) > far * far)
+            continue;
+        for (auto n = block.first; n < block.last; ++n) {
+            const wall& border = s.walls->walls[n];
             const auto v = border.line.seen_from(a.mean);
-            if (w.relative_ln_tail(squared_approach(v)) < -700)
+            if (squared_approach(v) > reach * reach)
                 continue;
             const double p = w(v);
             // Bits that read right on the near side go wrong beyond the wall, the others come right.
             const label_t near = v.height >= 0 ? border.inner_bits : border.mask & ~border.inner_bits;
             const label_t wrong_near = border.mask & (near ^ sent);
             for (unsigned left = border.mask; left != 0; left &= left - 1) {
-                const unsigned k = static_cast<unsigned>(__builtin_ctz(left));
-                one_arrival[k] += (wrong_near >> k & 1) ? -p : p;
+                const auto k = static_cast<unsigned>(__builtin_ctz(left));
+                sum[k] += (wrong_near >> k & 1) ? -p : p;
             }
         }
-        for (unsigned k = 0; k < bits; ++k)
-            out.by_bit[bits - 1 - k] += a.weight * one_arrival[k];
     }
+    for (unsigned k = 0; k < bits; ++k)
+        by_bit[bits - 1 - k] += a.weight * sum[k];
+}
+
+void exact_ber(const scene& s, const scaled_wedge& w, rate_sums& out)
+{
+    // A wall farther than R adds at most half the tail there. R is guessed from where each bit changes first
+    // and moved out until what all walls beyond could add is nothing to any bit's rate.
+    constexpr double negligible = 1e-14;
+    constexpr double nothing = -700;
+    const unsigned bits = s.set->label_bits();
+    const double ln_share =
+        std::log(2 * negligible / static_cast<double>(std::max<std::size_t>(1, s.walls->walls.size())));
+    double ln_cut = 0;
+    for (const double d : s.walls->approach)
+        if (std::isfinite(d))
+            ln_cut = std::min(ln_cut, w.relative_ln_tail(d));
+    ln_cut += ln_share - 5;
+    half_plane_memory memory(w);
+    for (bool enough = false; !enough;) {
+        const double reach = ln_cut > nothing ? w.distance_at(ln_cut) : inf;
+        out.by_bit.assign(bits, 0);
+        for (const auto& a : s.arrivals)
+            add_wrong_bits(s, memory, w.one(), a, reach, out.by_bit);
+        enough = true;
+        for (const double p : out.by_bit) {
+            const double needed = p > 0 ? std::log(p) + ln_share : nothing;
+            if (std::isfinite(reach) && needed < ln_cut) {
+                ln_cut = needed - 1;
+                enough = false;
+            }
+        }
+    }
+    out.exact.ber = 0;
     for (const double p : out.by_bit)
         out.exact.ber += p / bits;
 }
@@ -190,6 +276,28 @@ void facing_sum(const scene& s, const scaled_wedge& w, ser_ber& sum)
     }
 }
 
+void class_sum(const std::vector<pair_class>& classes, const scaled_wedge& w, ser_ber& sum)
+{
+    for (const auto& c : classes) {
+        const double p = w.half_plane(c.distance / 2);
+        sum.ser += c.ser_weight * p;
+        sum.ber += c.ber_weight * p;
+    }
+}
+
+void union_sum(const scene& s, const scaled_wedge& w, ser_ber& sum)
+{
+    // With one prior for all and thresholds half way, pairs whose tail is exp(−60) of the nearest are
+    // nothing: there are fewer than exp(16) of them, and no pair weighs more than another by more than its
+    // bits.
+    const bool cull = s.weights.empty() && !s.whiten && s.set->uniform();
+    const double far = cull ? 2 * w.distance_at(-60) : inf;
+    for (std::size_t i = 0; i < s.set->size(); ++i)
+        for (std::size_t j = i + 1; j < s.set->size(); ++j)
+            if (!cull || std::norm(s.set->points()[i] - s.set->points()[j]) < far * far)
+                add_pair(s, w, i, j, sum);
+}
+
 } // namespace
 
 rate_sums evaluate(const scene& s, const noise& n, unsigned parts)
@@ -201,23 +309,53 @@ rate_sums evaluate(const scene& s, const noise& n, unsigned parts)
         exact_ser(s, w, out);
     if (parts & part_exact_ber)
         exact_ber(s, w, out);
-    const std::size_t m = s.set->size();
-    if (parts & part_facing)
-        facing_sum(s, w, out.facing);
-    if (parts & (part_union | part_nearest)) {
-        const double closest = s.set->d_min() * (1 + 1e-9);
-        for (std::size_t i = 0; i < m; ++i)
-            for (std::size_t j = i + 1; j < m; ++j) {
-                ser_ber pair;
-                add_pair(s, w, i, j, pair);
-                out.union_bound.ser += pair.ser;
-                out.union_bound.ber += pair.ber;
-                if (std::abs(s.set->points()[i] - s.set->points()[j]) <= closest) {
-                    out.nearest.ser += pair.ser;
-                    out.nearest.ber += pair.ber;
-                }
-            }
+    if (parts & part_facing) {
+        if (s.repeated)
+            class_sum(s.repeated->facing, w, out.facing);
+        else
+            facing_sum(s, w, out.facing);
     }
+    if (parts & part_nearest) {
+        if (s.repeated)
+            class_sum(s.repeated->nearest, w, out.nearest);
+        else
+            for (const auto& [i, j] : closest_pairs(*s.set))
+                add_pair(s, w, i, j, out.nearest);
+    }
+    if (parts & part_union) {
+        if (s.repeated && s.repeated->all(*s.set))
+            class_sum(*s.repeated->all(*s.set), w, out.union_bound);
+        else
+            union_sum(s, w, out.union_bound);
+    }
+    return out;
+}
+
+const std::optional<std::vector<pair_class>>& repetitions::all(const signal_set& set) const
+{
+    std::call_once(d_once, [&] { d_all = classes_of_all(set); });
+    return d_all;
+}
+
+std::unique_ptr<repetitions> find_repetitions(const signal_set& set, const cells& regions)
+{
+    auto out = std::make_unique<repetitions>();
+    index_pairs facing;
+    std::map<std::array<double, 3>, std::uint32_t> known;
+    for (const auto& e : regions.edges()) {
+        facing.emplace_back(e.inner, e.outer);
+        edge_view look{e.offset, e.from, e.to};
+        if (look.from + look.to < 0) // mirrored, it looks the same
+            look = {e.offset, -e.to, -e.from};
+        const auto next = static_cast<std::uint32_t>(out->edge_classes.size());
+        const auto place = known.emplace(std::array<double, 3>{look.height, look.from, look.to}, next).first;
+        if (place->second == next)
+            out->edge_classes.push_back({look, 0});
+        out->edge_classes[place->second].weight += set.priors()[e.inner] + set.priors()[e.outer];
+        out->class_of_edge.push_back(place->second);
+    }
+    out->facing = classes_of(set, facing);
+    out->nearest = classes_of(set, closest_pairs(set));
     return out;
 }
 

@@ -2,6 +2,7 @@
 // scene: everything a rate depends on but the noise, and the sums of wedges over it.
 #pragma once
 
+#include "pair_classes.h"
 #include "rate_sums.h"
 #include "walls.h"
 
@@ -10,6 +11,9 @@
 #include "halfplane/signal_set.h"
 
 #include <cstdint>
+#include <memory>
+#include <mutex>
+#include <optional>
 #include <vector>
 
 namespace halfplane {
@@ -28,15 +32,38 @@ struct noise {
     const law* fading = nullptr;
 };
 
+/// Edges that look alike from their points: Σ(p_i + p_j) over them.
+struct edge_class {
+    edge_view look;
+    double weight = 0;
+};
+
+/// What repeats itself in cells that stay, under nearest-point decisions and circular noise.
+struct repetitions {
+    std::vector<edge_class> edge_classes;
+    std::vector<std::uint32_t> class_of_edge;
+    std::vector<pair_class> facing, nearest;
+    /// Of all pairs; gathered on first use.
+    const std::optional<std::vector<pair_class>>& all(const signal_set& set) const;
+
+private:
+    mutable std::once_flag d_once;
+    mutable std::optional<std::vector<pair_class>> d_all;
+};
+
+/// Groups the edges and pairs of a set. \returns never null
+std::unique_ptr<repetitions> find_repetitions(const signal_set& set, const cells& regions);
+
 /// Borders, labels and arrivals in the plane in which the noise is circular.
 struct scene {
     const signal_set* set;
     const cells* regions;
-    const std::vector<wall>* walls;
+    const wall_map* walls;
     std::vector<arrival> arrivals;
-    std::vector<double> weights;     ///< w_i of the power diagram, empty where all are equal
-    const matrix2* whiten = nullptr; ///< from the set's plane to this one, null where they are the same
-    bool undisplaced = true;         ///< one arrival a point, at the point itself
+    std::vector<double> weights;           ///< w_i of the power diagram, empty where all are equal
+    const matrix2* whiten = nullptr;       ///< from the set's plane to this one, null where they are the same
+    const repetitions* repeated = nullptr; ///< null where edges look different from their two sides
+    bool undisplaced = true;               ///< one arrival a point, at the point itself
 };
 
 /// All asked figures of a scene.

@@ -41,9 +41,7 @@ bool continues(const placed& a, const placed& b)
            std::abs(a.distance - b.distance) <= same_line && std::abs(b.from - a.to) <= same_corner;
 }
 
-} // namespace
-
-std::vector<wall> build_walls(const cells& regions, const std::vector<label_t>& labels)
+std::vector<wall> join(const cells& regions, const std::vector<label_t>& labels)
 {
     std::vector<placed> all;
     all.reserve(regions.edges().size());
@@ -70,6 +68,80 @@ std::vector<wall> build_walls(const cells& regions, const std::vector<label_t>& 
             joined.line.to = all[last].to;
         out.push_back(joined);
         k = last + 1;
+    }
+    return out;
+}
+
+complex centre_of(const wall& w)
+{
+    const edge& e = w.line;
+    const complex along(-e.normal.imag(), e.normal.real());
+    return e.origin + e.offset * e.normal + 0.5 * (e.from + e.to) * along;
+}
+
+double radius_of(const wall& w)
+{
+    return 0.5 * (w.line.to - w.line.from);
+}
+
+/// Halves the walls along the longer side of their extent until few are left to a block.
+void split(std::vector<wall>& walls, std::uint32_t first, std::uint32_t last, std::vector<wall_block>& blocks)
+{
+    constexpr std::uint32_t few = 16;
+    complex low = centre_of(walls[first]), high = low;
+    for (std::uint32_t k = first; k < last; ++k) {
+        const complex c = centre_of(walls[k]);
+        low = {std::min(low.real(), c.real()), std::min(low.imag(), c.imag())};
+        high = {std::max(high.real(), c.real()), std::max(high.imag(), c.imag())};
+    }
+    if (last - first <= few) {
+        wall_block block{first, last, 0.5 * (low + high), 0};
+        for (std::uint32_t k = first; k < last; ++k)
+            block.radius =
+                std::max(block.radius, std::abs(centre_of(walls[k]) - block.centre) + radius_of(walls[k]));
+        blocks.push_back(block);
+        return;
+    }
+    const std::uint32_t middle = first + (last - first) / 2;
+    const bool wide = high.real() - low.real() >= high.imag() - low.imag();
+    std::nth_element(walls.begin() + first,
+                     walls.begin() + middle,
+                     walls.begin() + last,
+                     [&](const wall& a, const wall& b) {
+                         return wide ? centre_of(a).real() < centre_of(b).real()
+                                     : centre_of(a).imag() < centre_of(b).imag();
+                     });
+    split(walls, first, middle, blocks);
+    split(walls, middle, last, blocks);
+}
+
+double squared_approach(double height, const edge& e)
+{
+    const double aside = std::max({0.0, e.from, -e.to});
+    return height * height + aside * aside;
+}
+
+} // namespace
+
+wall_map build_walls(const cells& regions, const std::vector<label_t>& labels, unsigned label_bits)
+{
+    wall_map out;
+    out.walls = join(regions, labels);
+    const auto bounded = std::stable_partition(
+        out.walls.begin(), out.walls.end(), [](const wall& w) { return std::isinf(radius_of(w)); });
+    const auto unbounded = static_cast<std::uint32_t>(bounded - out.walls.begin());
+    const auto count = static_cast<std::uint32_t>(out.walls.size());
+    if (unbounded > 0)
+        out.blocks.push_back({0, unbounded, 0, INFINITY});
+    if (unbounded < count)
+        split(out.walls, unbounded, count, out.blocks);
+    out.approach.assign(label_bits, INFINITY);
+    for (const auto& e : regions.edges()) {
+        const double near = squared_approach(e.offset, e);
+        for (unsigned left = labels[e.inner] ^ labels[e.outer]; left != 0; left &= left - 1) {
+            double& least = out.approach[static_cast<unsigned>(__builtin_ctz(left))];
+            least = std::min(least, near);
+        }
     }
     return out;
 }

@@ -18,7 +18,21 @@ struct wall {
     label_t mask, inner_bits;
 };
 
-/// The walls of labelled cells. Their geometry equals that of the edges to rounding.
-std::vector<wall> build_walls(const cells& regions, const std::vector<label_t>& labels);
+/// Walls first … last − 1 lie within `radius` of `centre`.
+struct wall_block {
+    std::uint32_t first, last;
+    complex centre;
+    double radius;
+};
+
+struct wall_map {
+    std::vector<wall> walls;
+    std::vector<wall_block> blocks;
+    /// By bit (0 the least significant): squared distance from a point to the nearest change of it next door.
+    std::vector<double> approach;
+};
+
+/// The walls of labelled cells, near ones in blocks. Their geometry equals that of the edges to rounding.
+wall_map build_walls(const cells& regions, const std::vector<label_t>& labels, unsigned label_bits);
 
 } // namespace halfplane

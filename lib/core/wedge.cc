@@ -49,18 +49,30 @@ double hyperbolic_length(double h, double a, double b, double near)
 }
 
 /*!
- * exp(x) for −700 < x < 1 to 3e-16, without branches or calls so that loops over nodes become vector code: 2^k by
- * the exponent bits, the rest by its series to the 13th power at |r| ≤ ln 2/2.
+ * exp(x) for −700 < x < 1 to 3e-16, without branches or calls so that loops over nodes become vector code:
+ * 2^k by the exponent bits, the rest by its series to the 13th power at |r| ≤ ln 2/2.
  */
 inline double vector_exp(double x)
 {
     constexpr double shifter = 6755399441055744.0; // 1.5·2^52: adding it rounds to a whole number
     const double shifted = x * 1.4426950408889634074 + shifter;
     const double k = shifted - shifter;
-    const double r = (x - k * 6.93147180369123816490e-01) - k * 1.90821492927058770002e-10; // ln 2 in two parts
+    const double r =
+        (x - k * 6.93147180369123816490e-01) - k * 1.90821492927058770002e-10; // ln 2 in two parts
     double p = 1 / 6227020800.0;
-    for (const double c : {1 / 479001600.0, 1 / 39916800.0, 1 / 3628800.0, 1 / 362880.0, 1 / 40320.0, 1 / 5040.0,
-                           1 / 720.0, 1 / 120.0, 1 / 24.0, 1 / 6.0, 0.5, 1.0, 1.0})
+    for (const double c : {1 / 479001600.0,
+                           1 / 39916800.0,
+                           1 / 3628800.0,
+                           1 / 362880.0,
+                           1 / 40320.0,
+                           1 / 5040.0,
+                           1 / 720.0,
+                           1 / 120.0,
+                           1 / 24.0,
+                           1 / 6.0,
+                           0.5,
+                           1.0,
+                           1.0})
         p = p * r + c;
     std::int64_t bits, power;
     std::memcpy(&bits, &p, sizeof bits);
