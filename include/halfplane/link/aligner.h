@@ -1,5 +1,6 @@
 // SPDX-License-Identifier: GPL-3.0-or-later
-// aligner: finds the pattern in one sample a symbol, corrects causally, and says of each symbol what was sent or why it is left out.
+// aligner: finds the pattern in one sample a symbol, corrects causally, and says of each symbol what was sent
+// or why it is left out.
 #pragma once
 
 #include "halfplane/pattern.h"
@@ -21,12 +22,12 @@ const char* to_string(lock_state s) noexcept;
 /// What is locked to. Angles in degrees, frequency in cycles a symbol.
 struct lock_status {
     lock_state state = lock_state::searching;
-    std::uint64_t delay = 0;   ///< pattern position of the first symbol ever put in, modulo the period
-    double rotation_deg = 0;   ///< symmetry that was undone, a multiple of 360/rotations
-    bool mirrored = false;     ///< spectrum inverted
-    bool inverted = false;     ///< bits inverted
-    double frequency = 0;      ///< residual frequency at lock
-    std::uint64_t slips = 0;   ///< so far
+    std::uint64_t delay = 0; ///< pattern position of the first symbol ever put in, modulo the period
+    double rotation_deg = 0; ///< of the set's own rotations the one nearest to the phase at lock, 0 … < 360
+    bool mirrored = false;   ///< spectrum inverted: samples are conjugated before anything else
+    bool inverted = false;   ///< bits inverted (never where a rotation says the same)
+    double frequency = 0;    ///< residual frequency of the received samples at lock
+    std::uint64_t slips = 0; ///< so far
 };
 
 /// A change of lock, at the output symbol with which it takes effect.
@@ -39,8 +40,8 @@ enum class correction { running, held, off };
 
 struct aligner_options {
     correction mode = correction::running;
-    std::size_t memory = 2000;   ///< symbols of the running estimate, ≥ 16
-    std::uint64_t seed = 1;      ///< nothing random is visible; kept for ties in the search
+    std::size_t memory = 2000; ///< symbols of the running estimate, ≥ 16
+    std::uint64_t seed = 1;    ///< nothing random is visible; kept for ties in the search
 };
 
 /*!
@@ -61,7 +62,10 @@ public:
      * \param out, reference room for `count` each
      * \returns how many were written; the total written is max(0, total taken − holdback)
      */
-    std::size_t process(const std::complex<float>* in, std::size_t count, std::complex<float>* out, reference_t* reference);
+    std::size_t process(const std::complex<float>* in,
+                        std::size_t count,
+                        std::complex<float>* out,
+                        reference_t* reference);
     /// End of a recording: empties the hold-back. Room for `holdback` symbols.
     std::size_t finish(std::complex<float>* out, reference_t* reference);
     /// Samples are missing before the next input sample (radio overflow).
