@@ -82,6 +82,22 @@ report lock_of(const lock_status& lock)
     return out;
 }
 
+report seconds_of(const second_counts& s)
+{
+    report out;
+    out["errored"] = s.errored();
+    out["severely_errored"] = s.severely_errored();
+    out["unavailable"] = s.unavailable();
+    out["available"] = s.available();
+    out["unmeasured"] = s.unmeasured();
+    if (s.available() > 0) {
+        const auto available = static_cast<double>(s.available());
+        out["errored_ratio"] = static_cast<double>(s.errored()) / available;
+        out["severely_errored_ratio"] = static_cast<double>(s.severely_errored()) / available;
+    }
+    return out;
+}
+
 report shortfall_of(const shortfall& s)
 {
     report out;
@@ -422,6 +438,8 @@ report watch::reporting::report_of(window&& w, bool final)
         out["shortfall"] = std::move(shortfalls);
     if (d_lock)
         out["lock"] = lock_of(*d_lock);
+    if (w.seconds.all() > 0)
+        out["seconds"] = seconds_of(w.seconds);
     return out;
 }
 

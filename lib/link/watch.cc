@@ -4,6 +4,7 @@
 
 #include "halfplane/kernels/detect.h"
 #include "reporting.h"
+#include "second_clock.h"
 
 #include <algorithm>
 #include <array>
@@ -49,6 +50,7 @@ void watch::window::merge(window&& later)
     counts.merge(later.counts);
     fit.merge(later.fit);
     blocks = later.blocks;
+    seconds = later.seconds;
     pending = later.pending;
     if (later.lock)
         lock = later.lock;
@@ -65,7 +67,8 @@ void watch::window::merge(window&& later)
 
 struct watch::counting {
     counting(const signal_set& s, const watch_options& o)
-        : set(s), receiver_decisions(o.receiver_decisions), window_length(o.window), open(s)
+        : set(s), receiver_decisions(o.receiver_decisions), window_length(o.window), open(s),
+          seconds(o.symbol_rate)
     {
         map = o.rule == detector::map || (o.rule == detector::automatic && !s.uniform());
         if (!receiver_decisions)
@@ -98,6 +101,7 @@ struct watch::counting {
     window open;
     std::uint64_t in_window = 0, handed = 0, pending = 0;
     block_counts blocks;
+    second_clock seconds;
     std::optional<lock_status> lock;
     std::optional<input_snr> input, next_input; // the next takes effect with the next symbol
 };
@@ -192,6 +196,7 @@ void watch::counting::follow_noise(double n0)
 void watch::counting::close(const window_handler& on_window)
 {
     open.blocks = blocks;
+    open.seconds = seconds.counts();
     open.lock = lock;
     open.pending = pending;
     open.input = input;
@@ -241,8 +246,10 @@ void watch::add(const std::complex<float>* in,
         c.take_next_input(on_window);
     for (std::size_t k = 0; k < count;) {
         const auto n = static_cast<std::size_t>(
-            std::min<std::uint64_t>({chunk, count - k, c.window_length - c.in_window}));
+            std::min<std::uint64_t>({chunk, count - k, c.window_length - c.in_window, c.seconds.left()}));
+        const second_clock::mark before(c.open.counts);
         c.take(in + k, reference + k, decided ? decided + k : nullptr, n);
+        c.seconds.add(before, second_clock::mark(c.open.counts), n);
         k += n;
         c.handed += n;
         c.in_window += n;

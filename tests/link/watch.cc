@@ -205,6 +205,39 @@ TEST(Watch, DecisionsOfTheReceiverAreTakenAsTheyAre)
     EXPECT_EQ(last["total"]["nonfinite"], 1u);
 }
 
+TEST(Watch, SecondsByTheSymbolRate)
+{
+    // 100.5 symbols a second: second k ends after ⌊(k + 1)·100.5⌋ symbols. By hand, 20 seconds: 0 and 1 hold
+    // symbols from before the lock; one wrong symbol in 3 (2 bits of about 200: BER 1e-2, severe); a NaN in 5
+    // (errored only); a slip in 7; the rest of the stream lost from 9 on, eleven seconds: unavailable.
+    // Available: seconds 2 … 8, seven of them.
+    const auto set = named_set("psk:4");
+    auto s = simulate(set, 2015, 60, 13);
+    const auto in_second = [](int k) { return static_cast<std::size_t>(std::floor(100.5 * k)) + 50; };
+    for (std::size_t k = 0; k < 150; ++k)
+        s.reference[k] = code(exclusion::before_lock);
+    s.samples[in_second(3)] *= -1.0f;
+    s.samples[in_second(5)] = {NAN, 0};
+    s.reference[in_second(7)] = code(exclusion::slip);
+    for (std::size_t k = 904; k < s.samples.size(); ++k) // ⌊9·100.5⌋ = 904
+        s.reference[k] = code(exclusion::signal_lost);
+    watch_options options;
+    options.symbol_rate = 100.5;
+    options.window = 333;
+    for (std::size_t piece : {1u, 64u, 5000u}) {
+        watch measured(set, options);
+        const auto last = reports_of(measured, s, piece).back();
+        const auto& seconds = last["seconds"];
+        EXPECT_EQ(last["total"]["seconds"], 2015 / 100.5);
+        EXPECT_EQ(seconds["unmeasured"], 2u);
+        EXPECT_EQ(seconds["available"], 7u);
+        EXPECT_EQ(seconds["unavailable"], 11u);
+        EXPECT_EQ(seconds["errored"], 3u);
+        EXPECT_EQ(seconds["severely_errored"], 2u);
+        EXPECT_EQ(seconds["errored_ratio"], 3.0 / 7);
+    }
+}
+
 TEST(Watch, NothingWasJudged)
 {
     const auto set = named_set("psk:4");

@@ -6,6 +6,7 @@
 #include "halfplane/gauge.h"
 #include "halfplane/link/aligner.h"
 #include "halfplane/rates.h"
+#include "halfplane/second_counts.h"
 #include "halfplane/signal_set.h"
 #include "halfplane/symbol_code.h"
 #include "halfplane/tally.h"
@@ -37,7 +38,7 @@ struct watch_options {
     detector rule = detector::automatic;
     bool receiver_decisions = false; ///< decisions come from the receiver, not from the nearest point
     double confidence = 0.95;        ///< of every interval, in (0, 1)
-    double symbol_rate = 0;          ///< Hz; 0 where unknown (then no `seconds`)
+    double symbol_rate = 0;          ///< Hz; 0 where unknown; below 1 there are no `seconds`
     std::uint64_t window = 10000;    ///< symbols handed in, judged or not, after which a window closes; ≥ 1
     std::function<std::string()> clock; ///< UTC, RFC 3339; the system's clock where empty
 };
@@ -60,6 +61,8 @@ public:
         tally counts;
         halfplane::gauge fit;
         block_counts blocks; ///< of the run up to the window's end
+        second_counts
+            seconds; ///< of the run up to the window's end, complete ones; none without a symbol rate
         std::optional<lock_status> lock;
         std::uint64_t pending = 0;
         /// Judged symbols and their errors by what was known of the input meanwhile.
