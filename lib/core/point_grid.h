@@ -27,8 +27,9 @@ public:
         d_low_q = low_q;
         const double wide = high_i - d_low_i, tall = high_q - low_q,
                      count = static_cast<double>(points.size());
-        // Two points a bucket where they fill a rectangle; on a line the longer side alone decides.
-        d_pitch = std::max(std::sqrt(2 * wide * tall / count), 2 * std::max(wide, tall) / count);
+        // A few points a bucket where they fill a rectangle (at 2.5 the first ring settles a square grid); on
+        // a line the longer side alone decides.
+        d_pitch = std::max(std::sqrt(2.5 * wide * tall / count), 2 * std::max(wide, tall) / count);
         d_columns = static_cast<int>(wide / d_pitch) + 1;
         d_rows = static_cast<int>(tall / d_pitch) + 1;
         d_first.assign(static_cast<std::size_t>(d_columns) * d_rows + 1, 0);

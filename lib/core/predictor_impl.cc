@@ -198,15 +198,18 @@ rate_sums predictor::impl::displaced(double es_n0, const std::vector<displaced_p
     });
 }
 
-std::vector<double> predictor::impl::row(double es_n0, std::size_t i) const
+std::vector<double> predictor::impl::rows(double es_n0, const std::vector<std::size_t>& sent) const
 {
-    require_index(i);
+    const std::size_t m = set.size();
     return averaged(es_n0,
                     [&](const diagram& d, const noise& n) {
+                        std::vector<arrival> from;
+                        for (const auto i : sent)
+                            from.push_back(d.view.arrivals[i]);
                         rate_sums out;
-                        out.by_point = transition_masses(d.view, n, d.view.arrivals[i]);
-                        for (std::size_t j = 0; j < out.by_point.size(); ++j)
-                            out.exact.ser += j == i ? 0 : out.by_point[j];
+                        out.by_point = transition_masses(d.view, n, from);
+                        for (std::size_t k = 0; k < out.by_point.size(); ++k)
+                            out.exact.ser += k % m == sent[k / m] ? 0 : out.by_point[k];
                         return out;
                     })
         .finish(set.label_bits())

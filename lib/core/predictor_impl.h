@@ -48,7 +48,8 @@ struct predictor::impl {
     rate_sums at(double es_n0, unsigned parts) const;
     /// The same for other arrivals, means in the unit of the given set.
     rate_sums displaced(double es_n0, const std::vector<displaced_point>& arrivals) const;
-    std::vector<double> row(double es_n0, std::size_t i) const;
+    /// P(j|i) for all j and the given i, row after row.
+    std::vector<double> rows(double es_n0, const std::vector<std::size_t>& sent) const;
     double ln_rate(double es_n0, rung_name r, bool bits) const;
     void require_index(std::size_t i) const;
     /// The diagram at this N0: the kept one, or `made` filled with a new one.

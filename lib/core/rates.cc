@@ -5,6 +5,7 @@
 #include "predictor_impl.h"
 
 #include <cmath>
+#include <numeric>
 #include <sstream>
 #include <stdexcept>
 
@@ -60,19 +61,15 @@ double predictor::ln_ber(double es_n0, rung_name r) const
 
 std::vector<double> predictor::transition_row(double es_n0, std::size_t i) const
 {
-    return d->row(es_n0, i);
+    d->require_index(i);
+    return d->rows(es_n0, {i});
 }
 
 std::vector<double> predictor::transitions(double es_n0) const
 {
-    const std::size_t m = d->set.size();
-    std::vector<double> out;
-    out.reserve(m * m);
-    for (std::size_t i = 0; i < m; ++i) {
-        const auto row = d->row(es_n0, i);
-        out.insert(out.end(), row.begin(), row.end());
-    }
-    return out;
+    std::vector<std::size_t> all(d->set.size());
+    std::iota(all.begin(), all.end(), std::size_t{0});
+    return d->rows(es_n0, all);
 }
 
 std::vector<double> predictor::expected_counts(double es_n0, const std::vector<std::uint64_t>& sent) const

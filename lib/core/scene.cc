@@ -138,36 +138,52 @@ void exact_ser(const scene& s, const scaled_wedge& w, rate_sums& out)
             out.by_point[i] /= sent_weight[i];
 }
 
-/// Half-planes by their distance: the walls of a grid repeat a few distances over and over.
-class half_plane_memory
+/// Wedges by their look: in a grid the same few come back over and over, to the last bit.
+class wedge_memory
 {
 public:
-    explicit half_plane_memory(const scaled_wedge& w) : d_wedge(w), d_known(1024, {-1, 0}) {}
-    double operator()(const edge_view& v)
+    wedge_memory(const scaled_wedge& w, std::size_t edges) : d_wedge(w)
     {
-        if (!std::isinf(v.from) || !std::isinf(v.to))
-            return d_wedge(v);
-        const double h = std::abs(v.height);
-        std::uint64_t bits;
-        std::memcpy(&bits, &h, sizeof bits);
-        auto& place = d_known[bits * 0x9E3779B97F4A7C15u >> 54];
-        if (place.first != h)
-            place = {h, d_wedge(v)};
-        return place.second;
+        while (d_bits < 12 && (std::size_t{1} << d_bits) < 4 * edges)
+            ++d_bits;
+        d_known.assign(std::size_t{1} << d_bits, {{-1, 0, 0}, 0});
+    }
+    double operator()(const edge_view& seen)
+    {
+        edge_view v{std::abs(seen.height), seen.from, seen.to};
+        if (v.from + v.to < 0)
+            v = {v.height, -v.to, -v.from};
+        auto& place = d_known[slot(v)];
+        if (place.look.height != v.height || place.look.from != v.from || place.look.to != v.to)
+            place = {v, d_wedge(v)};
+        return place.mass;
     }
 
 private:
+    struct entry {
+        edge_view look;
+        double mass;
+    };
+    static std::uint64_t pattern(double x)
+    {
+        std::uint64_t bits;
+        std::memcpy(&bits, &x, sizeof bits);
+        return bits;
+    }
+    std::size_t slot(const edge_view& v) const
+    {
+        const auto mixed = (pattern(v.height) * 0x9E3779B97F4A7C15u ^ pattern(v.from)) * 0xBF58476D1CE4E5B9u;
+        return (mixed ^ mixed >> 29) * 0x94D049BB133111EBu >> (64 - d_bits);
+    }
+
     const scaled_wedge& d_wedge;
-    std::vector<std::pair<double, double>> d_known;
+    unsigned d_bits = 6;
+    std::vector<entry> d_known;
 };
 
 /// Adds one arrival's wrong bits to by_bit (leftmost first), walls beyond `reach` left out.
-void add_wrong_bits(const scene& s,
-                    half_plane_memory& w,
-                    double one,
-                    const arrival& a,
-                    double reach,
-                    std::vector<double>& by_bit)
+void add_wrong_bits(
+    const scene& s, wedge_memory& w, double one, const arrival& a, double reach, std::vector<double>& by_bit)
 {
     const auto bits = static_cast<unsigned>(by_bit.size());
     const label_t sent = s.set->labels()[a.sent];
@@ -212,7 +228,7 @@ void exact_ber(const scene& s, const scaled_wedge& w, rate_sums& out)
         if (std::isfinite(d))
             ln_cut = std::min(ln_cut, w.relative_ln_tail(d));
     ln_cut += ln_share - 5;
-    half_plane_memory memory(w);
+    wedge_memory memory(w, s.walls->walls.size());
     for (bool enough = false; !enough;) {
         const double reach = ln_cut > nothing ? w.distance_at(ln_cut) : inf;
         out.by_bit.assign(bits, 0);
@@ -359,20 +375,25 @@ std::unique_ptr<repetitions> find_repetitions(const signal_set& set, const cells
     return out;
 }
 
-std::vector<double> transition_masses(const scene& s, const noise& n, const arrival& from)
+std::vector<double> transition_masses(const scene& s, const noise& n, const std::vector<arrival>& from)
 {
     const scaled_wedge w(n, 0);
-    std::vector<double> p(s.set->size(), 0);
-    for (const auto& e : s.regions->edges()) {
-        const auto v = e.seen_from(from.mean);
-        const double mass = v.height >= 0 ? w(v) : -w(v);
-        p[e.inner] -= mass;
-        p[e.outer] += mass;
+    wedge_memory memory(w, s.regions->edges().size());
+    const std::size_t m = s.set->size();
+    std::vector<double> out(from.size() * m, 0);
+    for (std::size_t row = 0; row < from.size(); ++row) {
+        double* p = out.data() + row * m;
+        for (const auto& e : s.regions->edges()) {
+            const auto v = e.seen_from(from[row].mean);
+            const double mass = v.height >= 0 ? memory(v) : -memory(v);
+            p[e.inner] -= mass;
+            p[e.outer] += mass;
+        }
+        p[from[row].owner] += 1;
     }
-    p[from.owner] += 1;
-    for (double& x : p)
+    for (double& x : out)
         x = std::max(x, 0.0);
-    return p;
+    return out;
 }
 
 } // namespace halfplane

@@ -69,7 +69,8 @@ struct scene {
 /// All asked figures of a scene.
 rate_sums evaluate(const scene& where, const noise& what, unsigned parts);
 
-/// P(j | arrival) for all j.
-std::vector<double> transition_masses(const scene& where, const noise& what, const arrival& from);
+/// P(j | arrival) for all j, one row for each arrival.
+std::vector<double>
+transition_masses(const scene& where, const noise& what, const std::vector<arrival>& from);
 
 } // namespace halfplane
