@@ -59,21 +59,22 @@ double hyperbolic_length(double h, double a, double b, double near)
     const double k = shifted - shifter;
     const double r =
         (x - k * 6.93147180369123816490e-01) - k * 1.90821492927058770002e-10; // ln 2 in two parts
-    double p = 1 / 6227020800.0;
-    for (const double c : {1 / 479001600.0,
-                           1 / 39916800.0,
-                           1 / 3628800.0,
-                           1 / 362880.0,
-                           1 / 40320.0,
-                           1 / 5040.0,
-                           1 / 720.0,
-                           1 / 120.0,
-                           1 / 24.0,
-                           1 / 6.0,
-                           0.5,
-                           1.0,
-                           1.0})
-        p = p * r + c;
+    double p =
+        1 /
+        6227020800.0; // written out: a loop over coefficients would keep the caller's from being vector code
+    p = p * r + 1 / 479001600.0;
+    p = p * r + 1 / 39916800.0;
+    p = p * r + 1 / 3628800.0;
+    p = p * r + 1 / 362880.0;
+    p = p * r + 1 / 40320.0;
+    p = p * r + 1 / 5040.0;
+    p = p * r + 1 / 720.0;
+    p = p * r + 1 / 120.0;
+    p = p * r + 1 / 24.0;
+    p = p * r + 1 / 6.0;
+    p = p * r + 0.5;
+    p = p * r + 1.0;
+    p = p * r + 1.0;
     std::int64_t bits, power;
     std::memcpy(&bits, &p, sizeof bits);
     std::memcpy(&power, &shifted, sizeof power);
