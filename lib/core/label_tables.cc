@@ -1,39 +1,66 @@
 // SPDX-License-Identifier: GPL-3.0-or-later
-// label_tables: labels of cross sets from the rectangular Gray grid whose ends are folded up and down.
+// label_tables: the searched labels of cross:32, and the rule that carries them to the larger cross sets.
 #include "label_tables.h"
 
-#include "families.h"
-
+#include <array>
 #include <cmath>
 
 namespace halfplane::detail {
 
+namespace {
+
 /*
- * The 2:1 rectangle of `size` points has a Gray labelling. Its leftmost and rightmost columns, one corner
- * wide each, are moved above and below (J. G. Smith, "Odd-bit quadrature amplitude-shift keying", IEEE Trans.
- * Commun. 23 (1975) 385, from memory), which leaves few neighbours more than one bit apart.
+ * Made by `label_search cross:32 20 1 40 20000` (target label_search of this folder): exact BER at Es/N0 = 20
+ * dB 5.4801e-4, where a Gray labelling, were there one, would have SER/5 = 5.0850e-4 and the usual folded
+ * rectangle (J. G. Smith, IEEE Trans. Commun. 23 (1975) 385) has 5.8710e-4. Seed 2 ends at the same BER.
+ */
+constexpr std::array<label_t, 32> cross_32{27, 11, 15, 31, 29, 25, 3,  7,  23, 19, 13, 9,  1,  5,  21, 17,
+                                           12, 8,  0,  4,  20, 16, 28, 24, 2,  6,  22, 18, 26, 10, 14, 30};
+
+/// Places of a cross set by row from the lower left: the side's length and the index of (row, column), −1 in
+/// a corner.
+struct cross_grid {
+    int side;
+    std::vector<int> index;
+
+    explicit cross_grid(std::size_t size)
+        : side(6 * static_cast<int>(std::lround(std::sqrt(static_cast<double>(size) / 32)))),
+          index(static_cast<std::size_t>(side * side), -1)
+    {
+        const auto outer = [&](int k) { return k < side / 6 || k >= side - side / 6; };
+        int next = 0;
+        for (int r = 0; r < side; ++r)
+            for (int c = 0; c < side; ++c)
+                if (!(outer(r) && outer(c)))
+                    index[static_cast<std::size_t>(r * side + c)] = next++;
+    }
+    int at(int row, int column) const { return index[static_cast<std::size_t>(row * side + column)]; }
+};
+
+} // namespace
+
+/*
+ * A cross of 4M points is a cross of M blocks of 2 × 2. Every block takes the smaller set's label and two
+ * bits of its own, mirrored from block to block: then only steps between blocks can cost more than one bit,
+ * and they cost what they do in the smaller set. Steps over a border of blocks double in number where all
+ * steps become four times as many, so the excess over Gray halves with each size; annealing from this start
+ * finds nothing better.
  */
 std::vector<label_t> cross_labels(std::size_t size)
 {
-    const int corner = static_cast<int>(std::lround(std::sqrt(static_cast<double>(size) / 32)));
-    const int side = 6 * corner, columns = 8 * corner, rows = 4 * corner;
-    const unsigned row_bits = bits_for(static_cast<std::size_t>(rows));
-    const auto outer = [&](int k) { return k < corner || k >= side - corner; };
-    std::vector<label_t> labels;
-    for (int r = 0; r < side; ++r)
-        for (int c = 0; c < side; ++c) {
-            if (outer(r) && outer(c))
+    if (size == cross_32.size())
+        return {cross_32.begin(), cross_32.end()};
+    const auto coarse_labels = cross_labels(size / 4);
+    const cross_grid fine(size), coarse(size / 4);
+    std::vector<label_t> labels(size);
+    for (int r = 0; r < fine.side; ++r)
+        for (int c = 0; c < fine.side; ++c) {
+            if (fine.at(r, c) < 0)
                 continue;
-            int row = r - corner, column = c + corner; // place in the rectangle
-            if (row < 0 || row >= rows) {              // below or above: from the end of the same side
-                const bool right = c >= side / 2;
-                const int depth = row < 0 ? -1 - row : row - rows;            // 0 next to the rectangle
-                const int along = right ? side - corner - 1 - c : c - corner; // 0 at the outer end
-                column = right ? columns - 1 - (corner - 1 - depth) : corner - 1 - depth;
-                row = row < 0 ? rows / 2 - 1 - along : rows / 2 + along;
-            }
-            labels.push_back(static_cast<label_t>(gray(static_cast<unsigned>(column)) << row_bits |
-                                                  gray(static_cast<unsigned>(row))));
+            const auto block = static_cast<std::size_t>(coarse.at(r / 2, c / 2));
+            const int column_bit = (c + c / 2) % 2, row_bit = (r + r / 2) % 2;
+            labels[static_cast<std::size_t>(fine.at(r, c))] =
+                static_cast<label_t>(coarse_labels[block] << 2 | column_bit << 1 | row_bit);
         }
     return labels;
 }
