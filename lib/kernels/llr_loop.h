@@ -14,25 +14,50 @@ namespace HALFPLANE_TARGET {
 namespace llr_detail {
 
 constexpr std::size_t lanes = llr_view::lanes;
-constexpr float floor_of_exp = -87.0f; // e^x is still a normal float
-constexpr float small_sum = 1e-26f;    // below, terms that were cut at the floor may matter
-constexpr float absent = -1e30f;       // metric of a label that no point carries
+constexpr float deepest = -2.8e6f; // metrics are clipped here, far beyond any saturation
+constexpr float absent = 2 * deepest;
+constexpr std::int32_t absent_exponent = -(1 << 24);
 
-/// e^x for x ≤ 88; taken as e^−87 below the floor. Taylor to the fifth power on ±ln 2 / 2: 3e-6 relative.
-inline float exp_of(float x)
+/*!
+ * A term e^x as fraction·2^exponent, the exponent an integer of its own: terms of one sample differ by
+ * factors far beyond the range of a float, and the ratio of an unlikely bit value is made of the small ones
+ * alone.
+ */
+struct scaled {
+    float fraction;
+    std::int32_t exponent;
+};
+
+/// Each x in `fraction` becomes e^x, |x| ≤ 2.8e6. Taylor to the fifth power on ±ln 2 / 2: 3e-6 relative.
+inline void exp_of(float* __restrict fraction, std::int32_t* __restrict exponent)
 {
-    x = x > floor_of_exp ? x : floor_of_exp;
-    const float shifted =
-        x * 1.44269504088896341f + 12582912.0f; // 1.5·2^23: the integer part in the low bits
-    const float whole = shifted - 12582912.0f;
-    const float f = x - whole * 0.693147180559945f;
-    float p = 1.0f / 120;
-    p = p * f + 1.0f / 24;
-    p = p * f + 1.0f / 6;
-    p = p * f + 0.5f;
-    p = p * f + 1.0f;
-    p = p * f + 1.0f;
-    return noise_detail::as_float(noise_detail::as_bits(p) + (noise_detail::as_bits(shifted) << 23));
+    for (std::size_t l = 0; l < lanes; ++l) {
+        const float x = fraction[l];
+        const float shifted =
+            x * 1.44269504088896341f + 12582912.0f; // 1.5·2^23: the integer part in the low bits
+        const float f = x - (shifted - 12582912.0f) * 0.693147180559945f;
+        float p = 1.0f / 120;
+        p = p * f + 1.0f / 24;
+        p = p * f + 1.0f / 6;
+        p = p * f + 0.5f;
+        p = p * f + 1.0f;
+        p = p * f + 1.0f;
+        fraction[l] = p;
+        exponent[l] = static_cast<std::int32_t>(noise_detail::as_bits(shifted) - 0x4b400000u);
+    }
+}
+
+/// 2^n for n ≤ 0, and 0 below −126.
+inline float down(std::int32_t n)
+{
+    n = n > -127 ? n : -127;
+    return noise_detail::as_float(static_cast<std::uint32_t>(n + 127) << 23);
+}
+
+inline scaled sum(scaled a, scaled b)
+{
+    const std::int32_t e = a.exponent > b.exponent ? a.exponent : b.exponent;
+    return {a.fraction * down(a.exponent - e) + b.fraction * down(b.exponent - e), e};
 }
 
 inline float log_of(float x)
@@ -45,106 +70,88 @@ inline float larger(float a, float b)
     return a > b ? a : b;
 }
 
-/// Metrics of all points less a common reference for each sample, in float.
-inline void metrics(const llr_view& v,
-                    const double* x,
-                    const double* y,
-                    const std::uint16_t* decided,
-                    float* __restrict difference)
+/// For each sample the metric from which all others are measured: the largest, or one near it.
+inline void reference_of(const llr_view& v,
+                         const double* x,
+                         const double* y,
+                         const std::uint16_t* decided,
+                         double* __restrict reference)
 {
-    double reference[lanes];
-    if (v.near_is_enough)
+    if (v.near_is_enough) {
         for (std::size_t l = 0; l < lanes; ++l) {
             const std::size_t i = v.place[decided[l]];
             reference[l] = x[l] * v.re[i] + y[l] * v.im[i] + v.constant[i];
         }
-    else {
-        for (std::size_t l = 0; l < lanes; ++l)
-            reference[l] = x[l] * v.re[0] + y[l] * v.im[0] + v.constant[0];
-        for (std::size_t i = 1; i < v.size; ++i)
-            for (std::size_t l = 0; l < lanes; ++l) {
-                const double m = x[l] * v.re[i] + y[l] * v.im[i] + v.constant[i];
-                reference[l] = m > reference[l] ? m : reference[l];
-            }
-    }
-    for (std::size_t i = 0; i < v.size; ++i) {
-        const double re = v.re[i], im = v.im[i], constant = v.constant[i];
-        float* row = difference + i * lanes;
-        for (std::size_t l = 0; l < lanes; ++l) {
-            const double d = x[l] * re + y[l] * im + constant - reference[l];
-            row[l] = static_cast<float>(d > absent ? d : static_cast<double>(absent));
-        }
-    }
-}
-
-/// One bit again, each side around its own largest term.
-inline void ratio_of_rare(const llr_view& v, const float* difference, unsigned bit, float* ratio)
-{
-    float best[2][lanes], sum[2][lanes];
-    for (std::size_t l = 0; l < lanes; ++l) {
-        best[0][l] = best[1][l] = 2 * absent;
-        sum[0][l] = sum[1][l] = 0;
-    }
-    for (std::size_t i = 0; i < v.size; ++i) {
-        float* top = best[v.label[i] >> bit & 1];
-        for (std::size_t l = 0; l < lanes; ++l)
-            top[l] = larger(top[l], difference[i * lanes + l]);
-    }
-    for (std::size_t i = 0; i < v.size; ++i) {
-        const unsigned side = v.label[i] >> bit & 1;
-        for (std::size_t l = 0; l < lanes; ++l)
-            sum[side][l] += exp_of(difference[i * lanes + l] - best[side][l]);
+        return;
     }
     for (std::size_t l = 0; l < lanes; ++l)
-        ratio[l] = best[0][l] - best[1][l] + (log_of(sum[0][l]) - log_of(sum[1][l]));
+        reference[l] = x[l] * v.re[0] + y[l] * v.im[0] + v.constant[0];
+    for (std::size_t i = 1; i < v.size; ++i)
+        for (std::size_t l = 0; l < lanes; ++l) {
+            const double m = x[l] * v.re[i] + y[l] * v.im[i] + v.constant[i];
+            reference[l] = m > reference[l] ? m : reference[l];
+        }
 }
 
 /*!
- * Ratios of all bits from one value a label: the top bit splits the rows in halves; combining these halves
- * row by row leaves a table for the bits below. Three operations a pair of rows, 3·2^b in all, instead of
- * b·2^b.
+ * All bits from one value a label: the top bit splits the rows in halves; combining these halves row by row
+ * leaves a table for the bits below. Three operations a pair of rows, 3·2^b in all, instead of b·2^b.
  */
-template <bool Exact>
-void ratios(const llr_view& v,
-            float* __restrict value,
-            const float* __restrict difference,
-            float (*ratio)[lanes])
+inline void exact_ratios(const llr_view& v,
+                         float* __restrict fraction,
+                         std::int32_t* __restrict exponent,
+                         float (*ratio)[lanes])
+{
+    for (unsigned bit = v.label_bits; bit-- > 0;) {
+        const std::size_t half = std::size_t{1} << bit;
+        float zero_f[lanes], one_f[lanes];
+        std::int32_t zero_e[lanes], one_e[lanes];
+        for (std::size_t l = 0; l < lanes; ++l) {
+            zero_f[l] = fraction[l], zero_e[l] = exponent[l];
+            one_f[l] = fraction[half * lanes + l], one_e[l] = exponent[half * lanes + l];
+            const scaled both = sum({zero_f[l], zero_e[l]}, {one_f[l], one_e[l]});
+            fraction[l] = both.fraction, exponent[l] = both.exponent;
+        }
+        for (std::size_t j = 1; j < half; ++j) {
+            float* low_f = fraction + j * lanes;
+            std::int32_t* low_e = exponent + j * lanes;
+            const float* high_f = low_f + half * lanes;
+            const std::int32_t* high_e = low_e + half * lanes;
+            for (std::size_t l = 0; l < lanes; ++l) {
+                const scaled low{low_f[l], low_e[l]}, high{high_f[l], high_e[l]};
+                const scaled zero = sum({zero_f[l], zero_e[l]}, low), one = sum({one_f[l], one_e[l]}, high);
+                const scaled both = sum(low, high);
+                zero_f[l] = zero.fraction, zero_e[l] = zero.exponent;
+                one_f[l] = one.fraction, one_e[l] = one.exponent;
+                low_f[l] = both.fraction, low_e[l] = both.exponent;
+            }
+        }
+        for (std::size_t l = 0; l < lanes; ++l)
+            ratio[bit][l] = static_cast<float>(zero_e[l] - one_e[l]) * 0.693147180559945f +
+                            (log_of(zero_f[l]) - log_of(one_f[l]));
+    }
+}
+
+/// The same tree with the largest in place of the sum.
+inline void max_ratios(const llr_view& v, float* __restrict value, float (*ratio)[lanes])
 {
     for (unsigned bit = v.label_bits; bit-- > 0;) {
         const std::size_t half = std::size_t{1} << bit;
         float zero[lanes], one[lanes];
         for (std::size_t l = 0; l < lanes; ++l)
-            zero[l] = one[l] = Exact ? 0.0f : 2 * absent;
+            zero[l] = one[l] = absent;
         for (std::size_t j = 0; j < half; ++j) {
             float* low = value + j * lanes;
-            const float* high = value + (j + half) * lanes;
+            const float* high = low + half * lanes;
             for (std::size_t l = 0; l < lanes; ++l) {
                 const float a = low[l], b = high[l];
-                zero[l] = Exact ? zero[l] + a : larger(zero[l], a);
-                one[l] = Exact ? one[l] + b : larger(one[l], b);
-                low[l] = Exact ? a + b : larger(a, b);
+                zero[l] = larger(zero[l], a);
+                one[l] = larger(one[l], b);
+                low[l] = larger(a, b);
             }
         }
-        float* out = ratio[bit];
-        if (!(v.has_zero >> bit & 1) || !(v.has_one >> bit & 1)) {
-            for (std::size_t l = 0; l < lanes; ++l)
-                out[l] = v.has_zero >> bit & 1 ? v.saturation : -v.saturation;
-        } else if (!Exact) {
-            for (std::size_t l = 0; l < lanes; ++l)
-                out[l] = zero[l] - one[l];
-        } else {
-            bool rare = false;
-            for (std::size_t l = 0; l < lanes; ++l)
-                rare |= (zero[l] < small_sum) | (one[l] < small_sum);
-            float again[lanes] = {};
-            if (rare)
-                ratio_of_rare(v, difference, bit, again);
-            // Each lane by its own sums, so that a sample's ratios do not depend on its neighbours.
-            for (std::size_t l = 0; l < lanes; ++l) {
-                const bool small = (zero[l] < small_sum) | (one[l] < small_sum);
-                out[l] = small ? again[l] : log_of(zero[l]) - log_of(one[l]);
-            }
-        }
+        for (std::size_t l = 0; l < lanes; ++l)
+            ratio[bit][l] = zero[l] - one[l];
     }
 }
 
@@ -159,7 +166,8 @@ void llr(const llr_view& v,
 {
     using namespace llr_detail;
     const std::size_t labels = std::size_t{1} << v.label_bits;
-    float *value = scratch, *difference = scratch + labels * lanes;
+    float* const value = scratch;
+    std::int32_t* const exponent = reinterpret_cast<std::int32_t*>(scratch + labels * lanes);
     float ratio[16][lanes];
     while (count > 0) {
         const std::size_t n = count < lanes ? count : lanes;
@@ -173,24 +181,33 @@ void llr(const llr_view& v,
             near[l] = finite ? decided[l] : static_cast<std::uint16_t>(0);
             speaks[l] = finite ? v.sign : 0.0f;
         }
-        metrics(v, x, y, near, difference);
+        double reference[lanes];
+        reference_of(v, x, y, near, reference);
         for (std::size_t i = 0; i < v.size; ++i) {
-            const float* from = difference + i * lanes;
-            float* to = value + v.label[i] * lanes;
+            const double re = v.re[i], im = v.im[i], constant = v.constant[i];
+            float difference[lanes];
+            for (std::size_t l = 0; l < lanes; ++l)
+                difference[l] = static_cast<float>(x[l] * re + y[l] * im + constant - reference[l]);
+            float* const row = value + v.label[i] * lanes;
+            std::int32_t* const row_exponent = exponent + v.label[i] * lanes;
+            for (std::size_t l = 0; l < lanes; ++l)
+                row[l] = larger(difference[l], deepest);
             if (v.exact)
-                for (std::size_t l = 0; l < lanes; ++l)
-                    to[l] = exp_of(from[l]);
-            else
-                for (std::size_t l = 0; l < lanes; ++l)
-                    to[l] = from[l];
+                exp_of(row, row_exponent);
         }
         for (std::size_t m = 0; m < v.missing_count; ++m)
-            for (std::size_t l = 0; l < lanes; ++l)
-                value[v.missing[m] * lanes + l] = v.exact ? 0.0f : 2 * absent;
+            for (std::size_t l = 0; l < lanes; ++l) {
+                value[v.missing[m] * lanes + l] = v.exact ? 0.0f : absent;
+                exponent[v.missing[m] * lanes + l] = absent_exponent;
+            }
         if (v.exact)
-            ratios<true>(v, value, difference, ratio);
+            exact_ratios(v, value, exponent, ratio);
         else
-            ratios<false>(v, value, difference, ratio);
+            max_ratios(v, value, ratio);
+        for (unsigned bit = 0; bit < v.label_bits; ++bit)
+            if (!(v.has_zero >> bit & 1) || !(v.has_one >> bit & 1))
+                for (std::size_t l = 0; l < lanes; ++l)
+                    ratio[bit][l] = v.has_zero >> bit & 1 ? v.saturation : -v.saturation;
         for (unsigned bit = 0; bit < v.label_bits; ++bit)
             for (std::size_t l = 0; l < lanes; ++l) {
                 const float r = ratio[bit][l];

@@ -22,7 +22,7 @@ struct llr_view {
     float sign, saturation;
     const std::uint16_t* place; ///< by index in the set, the place in the arrays above
     bool near_is_enough;        ///< the nearest point's metric may stand in for the largest
-    std::size_t scratch() const { return lanes * ((std::size_t{1} << label_bits) + size); } ///< floats
+    std::size_t scratch() const { return 2 * lanes << label_bits; } ///< floats
 };
 
 } // namespace halfplane::kernels
