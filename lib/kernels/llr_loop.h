@@ -71,7 +71,7 @@ inline float larger(float a, float b)
 }
 
 /// For each sample the metric from which all others are measured: the largest, or one near it.
-inline void reference_of(const llr_view& v,
+inline void reference_of(const llr_part& v,
                          const double* x,
                          const double* y,
                          const std::uint16_t* decided,
@@ -97,12 +97,12 @@ inline void reference_of(const llr_view& v,
  * All bits from one value a label: the top bit splits the rows in halves; combining these halves row by row
  * leaves a table for the bits below. Three operations a pair of rows, 3·2^b in all, instead of b·2^b.
  */
-inline void exact_ratios(const llr_view& v,
+inline void exact_ratios(const llr_part& v,
                          float* __restrict fraction,
                          std::int32_t* __restrict exponent,
                          float (*ratio)[lanes])
 {
-    for (unsigned bit = v.label_bits; bit-- > 0;) {
+    for (unsigned bit = v.bits; bit-- > 0;) {
         const std::size_t half = std::size_t{1} << bit;
         float zero_f[lanes], one_f[lanes];
         std::int32_t zero_e[lanes], one_e[lanes];
@@ -133,9 +133,9 @@ inline void exact_ratios(const llr_view& v,
 }
 
 /// The same tree with the largest in place of the sum.
-inline void max_ratios(const llr_view& v, float* __restrict value, float (*ratio)[lanes])
+inline void max_ratios(const llr_part& v, float* __restrict value, float (*ratio)[lanes])
 {
-    for (unsigned bit = v.label_bits; bit-- > 0;) {
+    for (unsigned bit = v.bits; bit-- > 0;) {
         const std::size_t half = std::size_t{1} << bit;
         float zero[lanes], one[lanes];
         for (std::size_t l = 0; l < lanes; ++l)
@@ -153,6 +153,49 @@ inline void max_ratios(const llr_view& v, float* __restrict value, float (*ratio
         for (std::size_t l = 0; l < lanes; ++l)
             ratio[bit][l] = zero[l] - one[l];
     }
+}
+
+/// The ratios of a part's bits, each at its position.
+inline void part_ratios(const llr_view& whole,
+                        const llr_part& v,
+                        const double* x,
+                        const double* y,
+                        const std::uint16_t* near,
+                        float* value,
+                        std::int32_t* exponent,
+                        float (*ratio)[lanes])
+{
+    float own[16][lanes];
+    double reference[lanes];
+    reference_of(v, x, y, near, reference);
+    for (std::size_t i = 0; i < v.size; ++i) {
+        const double re = v.re[i], im = v.im[i], constant = v.constant[i];
+        float difference[lanes];
+        for (std::size_t l = 0; l < lanes; ++l)
+            difference[l] = static_cast<float>(x[l] * re + y[l] * im + constant - reference[l]);
+        float* const row = value + v.label[i] * lanes;
+        std::int32_t* const row_exponent = exponent + v.label[i] * lanes;
+        for (std::size_t l = 0; l < lanes; ++l)
+            row[l] = larger(difference[l], deepest);
+        if (whole.exact)
+            exp_of(row, row_exponent);
+    }
+    for (std::size_t m = 0; m < v.missing_count; ++m)
+        for (std::size_t l = 0; l < lanes; ++l) {
+            value[v.missing[m] * lanes + l] = whole.exact ? 0.0f : absent;
+            exponent[v.missing[m] * lanes + l] = absent_exponent;
+        }
+    if (whole.exact)
+        exact_ratios(v, value, exponent, own);
+    else
+        max_ratios(v, value, own);
+    for (unsigned bit = 0; bit < v.bits; ++bit)
+        if (!(v.has_zero >> bit & 1) || !(v.has_one >> bit & 1))
+            for (std::size_t l = 0; l < lanes; ++l)
+                own[bit][l] = v.has_zero >> bit & 1 ? whole.saturation : -whole.saturation;
+    for (unsigned bit = 0; bit < v.bits; ++bit)
+        for (std::size_t l = 0; l < lanes; ++l)
+            ratio[v.position[bit]][l] = own[bit][l];
 }
 
 } // namespace llr_detail
@@ -181,33 +224,8 @@ void llr(const llr_view& v,
             near[l] = finite ? decided[l] : static_cast<std::uint16_t>(0);
             speaks[l] = finite ? v.sign : 0.0f;
         }
-        double reference[lanes];
-        reference_of(v, x, y, near, reference);
-        for (std::size_t i = 0; i < v.size; ++i) {
-            const double re = v.re[i], im = v.im[i], constant = v.constant[i];
-            float difference[lanes];
-            for (std::size_t l = 0; l < lanes; ++l)
-                difference[l] = static_cast<float>(x[l] * re + y[l] * im + constant - reference[l]);
-            float* const row = value + v.label[i] * lanes;
-            std::int32_t* const row_exponent = exponent + v.label[i] * lanes;
-            for (std::size_t l = 0; l < lanes; ++l)
-                row[l] = larger(difference[l], deepest);
-            if (v.exact)
-                exp_of(row, row_exponent);
-        }
-        for (std::size_t m = 0; m < v.missing_count; ++m)
-            for (std::size_t l = 0; l < lanes; ++l) {
-                value[v.missing[m] * lanes + l] = v.exact ? 0.0f : absent;
-                exponent[v.missing[m] * lanes + l] = absent_exponent;
-            }
-        if (v.exact)
-            exact_ratios(v, value, exponent, ratio);
-        else
-            max_ratios(v, value, ratio);
-        for (unsigned bit = 0; bit < v.label_bits; ++bit)
-            if (!(v.has_zero >> bit & 1) || !(v.has_one >> bit & 1))
-                for (std::size_t l = 0; l < lanes; ++l)
-                    ratio[bit][l] = v.has_zero >> bit & 1 ? v.saturation : -v.saturation;
+        for (unsigned p = 0; p < v.parts; ++p)
+            part_ratios(v, v.part[p], x, y, near, value, exponent, ratio);
         for (unsigned bit = 0; bit < v.label_bits; ++bit)
             for (std::size_t l = 0; l < lanes; ++l) {
                 const float r = ratio[bit][l];
@@ -216,7 +234,7 @@ void llr(const llr_view& v,
             }
         for (std::size_t l = 0; l < n; ++l)
             for (unsigned k = 0; k < v.label_bits; ++k)
-                out[l * v.label_bits + k] = ratio[v.label_bits - 1 - k][l];
+                out[l * v.label_bits + k] = ratio[k][l];
         in += 2 * n, decided += n, out += n * v.label_bits, count -= n;
     }
 }

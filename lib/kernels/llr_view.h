@@ -7,21 +7,35 @@
 
 namespace halfplane::kernels {
 
-struct llr_view {
-    static constexpr std::size_t lanes = 16; ///< samples that are worked on together
-
-    // Points in ascending order of their labels; the metric of a sample is x·re + y·im + constant, in nats.
+/*!
+ * Points that differ in some of the label's bits, in ascending order of these bits. The metric of a sample is
+ * x·re + y·im + constant, in nats.
+ */
+struct llr_part {
     const double *re, *im, *constant;
     const std::uint16_t* label;
     std::size_t size;
-    unsigned label_bits;
+    unsigned bits;
     const std::uint16_t* missing; ///< labels that no point carries
     std::size_t missing_count;
     std::uint32_t has_zero, has_one; ///< bit k (0 the least significant) stands as 0, as 1, in some label
+    const std::uint8_t* position;    ///< of bit k within a sample's ratios
+    const std::uint16_t* place;      ///< by index in the set, the place in the arrays above
+    bool near_is_enough;             ///< the nearest point's metric may stand in for the largest
+};
+
+/*!
+ * One part that is the whole set; or two, where points, labels and priors are a product of in-phase and
+ * quadrature: the sums over one axis then cancel from the ratios of the other's bits, and √M + √M points do
+ * for M.
+ */
+struct llr_view {
+    static constexpr std::size_t lanes = 16; ///< samples that are worked on together
+    llr_part part[2];
+    unsigned parts;
+    unsigned label_bits;
     bool exact;
     float sign, saturation;
-    const std::uint16_t* place; ///< by index in the set, the place in the arrays above
-    bool near_is_enough;        ///< the nearest point's metric may stand in for the largest
     std::size_t scratch() const { return 2 * lanes << label_bits; } ///< floats
 };
 
