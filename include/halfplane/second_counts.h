@@ -25,7 +25,7 @@ struct second {
 class second_counts
 {
 public:
-    static constexpr double severe_ber = 1e-3;
+    static constexpr std::uint64_t severe_share = 1000; ///< severe: one bit error in so many bits, or more
     static constexpr unsigned row = 10;
 
     void add(const second& s);

@@ -10,8 +10,8 @@ void second_counts::add(const second& s)
         ++d_unmeasured;
         return;
     }
-    // Errors ≥ 1e-3 · bits, in integers.
-    const bool severe = s.lost || (s.bits > 0 && s.bit_errors * 1000 >= s.bits);
+
+    const bool severe = s.lost || (s.bits > 0 && s.bit_errors * severe_share >= s.bits);
     const bool errored = severe || s.bit_errors > 0 || s.damaged;
 
     if (severe == d_is_available) { // speaks for the other state
