@@ -10,6 +10,9 @@ PYBIND11_MODULE(blocks_python, m)
     py::module::import("pmt");
     py::module::import("gnuradio.gr");
     py::module::import("gnuradio.halfplane.core_python");
+    bind_aligner(m);
+    bind_link_log(m);
+    bind_link_watch(m);
     bind_noise_at(m);
     bind_point_detector(m);
     bind_point_mapper(m);

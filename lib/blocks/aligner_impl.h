@@ -1,0 +1,45 @@
+// SPDX-License-Identifier: GPL-3.0-or-later
+// aligner_impl: feeds the aligner, tags its outputs, passes on what the radio says of lost samples.
+#pragma once
+
+#include "halfplane/link/aligner.h"
+#include "rx_time.h"
+
+#include <gnuradio/gr_complex.h>
+#include <gnuradio/halfplane/aligner.h>
+
+#include <mutex>
+#include <vector>
+
+namespace gr::halfplane {
+
+class aligner_impl final : public aligner
+{
+public:
+    aligner_impl(const ::halfplane::signal_set& set,
+                 const std::string& pattern,
+                 const std::string& correction,
+                 std::uint64_t memory,
+                 double symbol_rate);
+
+    std::string state() const override;
+    std::uint64_t slips() const override;
+    void forecast(int noutput_items, gr_vector_int& ninput_items_required) override;
+    int general_work(int noutput_items,
+                     gr_vector_int& ninput_items,
+                     gr_vector_const_void_star& in,
+                     gr_vector_void_star& out) override;
+
+private:
+    std::vector<std::uint64_t> overflows_before(std::uint64_t end);
+    void announce(std::uint64_t first_output);
+
+    const ::halfplane::pattern d_pattern;
+    ::halfplane::link::aligner d_aligner; ///< used by the block's own thread only
+    rx_time d_time;
+    bool d_overflow_message = false;
+    mutable std::mutex d_mutex; ///< guards d_status
+    ::halfplane::link::lock_status d_status;
+};
+
+} // namespace gr::halfplane

@@ -1,0 +1,36 @@
+// SPDX-License-Identifier: GPL-3.0-or-later
+// link_watch for Python.
+#include "bind.h"
+
+#include <gnuradio/halfplane/link_watch.h>
+
+namespace py = pybind11;
+using gr::halfplane::link_watch;
+
+void bind_link_watch(py::module& m)
+{
+    py::class_<link_watch, gr::sync_block, gr::block, gr::basic_block, link_watch::sptr>(
+        m,
+        "link_watch",
+        R"doc(Counts errors, gauges the points, and sets the predicted rates beside the count.
+
+In 0: complex samples, one a symbol. In 1 (short): the index sent, or a negative code, from aligner. In 2 (short,
+only with decisions='receiver'): the receiver's decisions, -1 where it has none.
+
+set: the constellation. pattern: its text, for the report. window: symbols a report, >= 1. confidence: of the
+intervals, inside (0, 1). symbol_rate: Hz, 0 where unknown. decisions: 'own' or 'receiver'.
+
+Message ports: 'report' out (dict), 'input' in (from noise_at or a meter). Raises ValueError naming parameter and
+value.)doc")
+        .def(py::init(&link_watch::make),
+             py::arg("set"),
+             py::arg("pattern"),
+             py::arg("window") = std::uint64_t{10000},
+             py::arg("confidence") = 0.95,
+             py::arg("symbol_rate") = 0.0,
+             py::arg("decisions") = "own")
+        .def("report",
+             &link_watch::report,
+             py::call_guard<py::gil_scoped_release>(),
+             "The latest report as JSON text, '' before the first; the final one after top_block.wait().");
+}
