@@ -18,14 +18,13 @@ using core_aligner = ::halfplane::link::aligner;
 
 ::halfplane::link::aligner_options options_of(const std::string& correction, std::uint64_t memory)
 {
-    using ::halfplane::link::correction;
     ::halfplane::link::aligner_options options;
     if (correction == "running")
-        options.mode = correction::running;
+        options.mode = ::halfplane::link::correction::running;
     else if (correction == "held")
-        options.mode = correction::held;
+        options.mode = ::halfplane::link::correction::held;
     else if (correction == "off")
-        options.mode = correction::off;
+        options.mode = ::halfplane::link::correction::off;
     else
         refuse_word("aligner", "correction", correction, "one of running, held, off is wanted");
     options.memory = checked("aligner", "memory", memory, memory >= 16, "at least 16 symbols are wanted");
