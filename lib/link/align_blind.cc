@@ -57,9 +57,11 @@ blind_phase::blind_phase(const signal_set& set) : d_set(&set), d_rotations(rotat
     }
     d_bins_per_rms = bins / (peak + 1.5);
 
-    // From where hardly anything can be told to where neighbours lie ten standard deviations apart.
-    const double highest = 100 * set.es() / (set.d_min() * set.d_min());
-    for (double snr = 0.5; snr < 2 * highest; snr *= std::pow(10, 0.2)) {
+    // From where hardly anything can be told to where neighbours lie ten standard deviations apart, or noise
+    // becomes narrower than a bin.
+    const double highest =
+        std::min(200 * set.es() / (set.d_min() * set.d_min()), d_bins_per_rms * d_bins_per_rms / 2);
+    for (double snr = 0.5; snr < highest; snr *= std::pow(10, 0.2)) {
         level l{snr, std::vector<double>(bins), {}};
         const double n0 = 1 / (1 + snr), scale = std::sqrt(snr / (1 + snr));
         for (std::size_t b = 0; b < bins; ++b) {
@@ -146,7 +148,7 @@ blind_phase::estimate(const sample* r, std::size_t count, std::size_t most)
     // Sums over pieces so short that the fastest harmonic stands still within them.
     const double fastest = widest_frequency * d_rotations * d_harmonics;
     std::size_t piece = 1;
-    while (piece < 128 && fastest * static_cast<double>(piece) < 0.05)
+    while (piece < 128 && fastest * static_cast<double>(piece) < 0.1)
         piece *= 2;
     const std::size_t pieces = (count + piece - 1) / piece;
     std::vector<std::vector<sample>> sums(d_harmonics, std::vector<sample>(pieces));
@@ -165,6 +167,9 @@ blind_phase::estimate(const sample* r, std::size_t count, std::size_t most)
     };
     std::vector<complex> spectrum(d_harmonics);
     const std::size_t phases = 24 * d_harmonics;
+    std::vector<complex> turns(phases);
+    for (std::size_t q = 0; q < phases; ++q)
+        turns[q] = std::polar(1.0, -2 * M_PI * static_cast<double>(q) / static_cast<double>(phases));
     const auto best_phase = [&](double f) {
         for (unsigned h = 0; h < d_harmonics; ++h) {
             const double turn = -2 * M_PI * f * (h + 1) * d_rotations * static_cast<double>(piece);
@@ -183,9 +188,15 @@ blind_phase::estimate(const sample* r, std::size_t count, std::size_t most)
         };
         const double step = 2 * M_PI / static_cast<double>(phases);
         peak best{-1e300, 0, f};
-        for (std::size_t q = 0; q < phases; ++q)
-            if (const double v = value(static_cast<double>(q) * step); v > best.value)
+        for (std::size_t q = 0; q < phases; ++q) {
+            double v = 0;
+            for (unsigned h = 0; h < d_harmonics; ++h) {
+                const complex& turn = turns[(h + 1) * q % phases];
+                v += spectrum[h].real() * turn.real() - spectrum[h].imag() * turn.imag();
+            }
+            if (v > best.value)
                 best = {v, static_cast<double>(q) * step, f};
+        }
         const double low = value(best.phase - step), high = value(best.phase + step),
                      bend = low - 2 * best.value + high;
         if (bend < 0)

@@ -45,13 +45,7 @@ void tracker::trust(double coefficient)
 void tracker::correct(
     const sample* r, const std::uint16_t* sent, const sample* points, std::size_t count, sample* y)
 {
-    // The phasor by doubling: few roundings, no chain of products as long as the chunk.
-    d_phasor[0] = {1, 0};
-    for (std::size_t have = 1; have < count; have *= 2) {
-        const sample by(std::polar(1.0, -2 * M_PI * d_frequency * static_cast<double>(have)));
-        for (std::size_t k = 0; k < std::min(have, count - have); ++k)
-            d_phasor[have + k] = times(d_phasor[k], by);
-    }
+    phasors(0, -2 * M_PI * d_frequency, count, d_phasor.data());
     const sample scale(1.0 / d_gain);
     for (std::size_t k = 0; k < count; ++k)
         d_turned[k] = times(r[k], d_phasor[k]);

@@ -31,6 +31,19 @@ inline float energy(sample a) noexcept
     return a.real() * a.real() + a.imag() * a.imag();
 }
 
+/// out[k] = e^{j(start + k·step)}, radians, by doubling: few roundings, and no chain of products as long as
+/// the run.
+inline void phasors(double start, double step, std::size_t count, sample* out) noexcept
+{
+    out[0] = sample(std::polar(1.0, start));
+    for (std::size_t have = 1; have < count; have *= 2) {
+        const sample by(std::polar(1.0, step * static_cast<double>(have)));
+        const std::size_t more = have < count - have ? have : count - have;
+        for (std::size_t k = 0; k < more; ++k)
+            out[have + k] = times(out[k], by);
+    }
+}
+
 /// Samples fit for sums: finite, and so small that squares summed over any window stay finite too.
 inline bool usable(sample a) noexcept
 {

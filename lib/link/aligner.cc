@@ -161,10 +161,13 @@ struct aligner::impl {
 
     void correct_held(const sample* z, std::size_t count, sample* y) const
     {
-        for (std::size_t k = 0; k < count; ++k) {
-            const double cycles = std::fmod(held_frequency * static_cast<double>(done + k - held_at), 1.0);
-            y[k] = times(z[k], sample(std::polar(1.0, -2 * M_PI * cycles) / held_gain));
-        }
+        // Whole cycles are dropped before they cost digits.
+        const double cycles = std::fmod(held_frequency * static_cast<double>(done - held_at), 1.0);
+        std::array<sample, tracker::longest_chunk> turn;
+        phasors(-2 * M_PI * cycles - std::arg(held_gain), -2 * M_PI * held_frequency, count, turn.data());
+        const auto scale = static_cast<float>(1 / std::abs(held_gain));
+        for (std::size_t k = 0; k < count; ++k)
+            y[k] = times(z[k], turn[k] * scale);
     }
 
     void correct_rotation(const sample* z, std::size_t count, sample* y) const

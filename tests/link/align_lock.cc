@@ -197,7 +197,7 @@ TEST(AlignLock, LargestSets)
         const char* set;
         const char* pattern;
         double es_n0_db;
-    } const cases[] = {{"qam:4096", "draw:1", 45}, {"qam:256", "o150:31", 30}};
+    } const cases[] = {{"qam:4096", "draw:1", 45}, {"qam:4096", "o150:31", 45}};
     for (const auto& q : cases) {
         const auto set = named(q.set);
         const pattern known(q.pattern, set);
