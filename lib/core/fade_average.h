@@ -34,30 +34,32 @@ rate_sums average_over_fade(const law& channel, const Figures& figures)
         weighted.add(g * channel.density(g, 1), figures(g));
         return weighted;
     };
-    const auto ln_size = [](const rate_sums& r) { return std::log(r.magnitude()) + r.ln_scale; };
-    // Terms outward from `start`, until they stay below what the sum can hold.
-    const auto walk = [&](rate_sums& sum, double start, double stride) {
-        int small = 0;
-        for (double s = start; small < 3 && std::abs(s) < 700; s += stride) {
-            const auto t = term(s);
-            if (t.magnitude() > 0)
-                sum.add(1, t);
-            small = ln_size(t) > ln_size(sum) + std::log(negligible) ? 0 : small + 1;
-        }
-    };
     const double centre = std::log(mean);
-    rate_sums sum;
-    walk(sum, centre, step);
-    walk(sum, centre - step, -step);
-    double before = ln_size(sum) + std::log(step);
+    rate_sums sum = term(centre);
+    // Outward on both sides as far as any figure notices; the tails on both sides fall for good.
+    const auto edge_of = [&](double stride) {
+        int small = 0;
+        double s = centre;
+        while (small < 3 && std::abs(s) < 700) {
+            s += stride;
+            const auto t = term(s);
+            small = t.negligible_beside(sum, negligible) ? small + 1 : 0;
+            sum.add(1, t);
+        }
+        return s;
+    };
+    const double high = edge_of(step), low = edge_of(-step);
     for (int k = 0; k < most_halvings; ++k) {
-        walk(sum, centre + step / 2, step);
-        walk(sum, centre - step / 2, -step);
+        rate_sums between;
+        for (double s = low + step / 2; s < high; s += step)
+            between.add(1, term(s));
         step /= 2;
-        const double now = ln_size(sum) + std::log(step);
-        if (std::abs(now - before) < settled)
+        // The rule has settled when the new places alone say what the old ones said.
+        rate_sums difference = sum;
+        difference.add(-1, between);
+        sum.add(1, between);
+        if (difference.absolute().negligible_beside(sum, settled))
             break;
-        before = now;
     }
     rate_sums scaled;
     scaled.add(step, sum);

@@ -28,6 +28,10 @@ public:
 
     /// An arrival at `mean`, in the detector's plane.
     arrival arriving(std::size_t sent, complex mean, double weight) const;
+    /// The same for any mean, split in two where it lies on a border; `deviation` of the noise in one
+    /// dimension.
+    void add_arrival(
+        std::size_t sent, complex mean, double weight, double deviation, std::vector<arrival>& out) const;
     /// A scene with other arrivals.
     scene displaced(std::vector<arrival> arrivals) const;
 
@@ -37,6 +41,8 @@ public:
     scene view;
 
 private:
+    /// Distance from a mean (in the plane of the edges) to the nearest border line of its owner.
+    double room(std::size_t owner, complex mean) const;
     bool moved() const { return d_whiten || !view.weights.empty(); }
     const matrix2* d_whiten;
 };

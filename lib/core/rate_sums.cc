@@ -60,8 +60,25 @@ double rate_sums::magnitude() const
 {
     double sum = 0;
     for (const auto* r : {&exact, &facing, &union_bound, &nearest})
-        sum += r->ser + r->ber;
+        sum += std::abs(r->ser) + std::abs(r->ber);
     return sum;
+}
+
+bool rate_sums::negligible_beside(const rate_sums& sum, double share) const
+{
+    const double factor = std::exp(std::min(700.0, ln_scale - sum.ln_scale));
+    for (const auto r : {&rate_sums::exact, &rate_sums::facing, &rate_sums::union_bound, &rate_sums::nearest})
+        if ((this->*r).ser * factor > share * (sum.*r).ser || (this->*r).ber * factor > share * (sum.*r).ber)
+            return false;
+    return true;
+}
+
+rate_sums rate_sums::absolute() const
+{
+    rate_sums out = *this;
+    for (auto* r : {&out.exact, &out.facing, &out.union_bound, &out.nearest})
+        *r = {std::abs(r->ser), std::abs(r->ber)};
+    return out;
 }
 
 double rate_sums::least() const

@@ -28,8 +28,12 @@ struct rate_sums {
     std::vector<double> by_point, by_bit;
 
     const ser_ber& of(rung_name r) const;
-    /// Sum of all figures, to tell when a series of them has settled.
+    /// Sum of all figures; 0 where nothing has been added yet.
     double magnitude() const;
+    /// True when no figure is more than `share` of the same figure of `sum`.
+    bool negligible_beside(const rate_sums& sum, double share) const;
+    /// The same with every rung's figures made positive.
+    rate_sums absolute() const;
     /// The smallest figure that is not 0, including those by point and by bit.
     double least() const;
     /// Adds `weight` times the other figures, scales reconciled.

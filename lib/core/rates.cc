@@ -93,10 +93,10 @@ exact_rung predictor::displaced(double es_n0, const std::vector<complex>& means)
     std::vector<displaced_point> arrivals;
     for (std::size_t i = 0; i < means.size(); ++i)
         arrivals.push_back({i, means[i], d->set.priors()[i]});
-    return displaced(es_n0, arrivals);
+    return displaced_among(es_n0, arrivals);
 }
 
-exact_rung predictor::displaced(double es_n0, const std::vector<displaced_point>& arrivals) const
+exact_rung predictor::displaced_among(double es_n0, const std::vector<displaced_point>& arrivals) const
 {
     double sum = 0;
     for (std::size_t k = 0; k < arrivals.size(); ++k) {
