@@ -2,8 +2,12 @@
 // align_types: places in the pattern, and the symmetries that decide which hypotheses differ.
 #include "align_types.h"
 
+#include "halfplane/geometry.h"
+
 #include <algorithm>
 #include <numeric>
+#include <tuple>
+#include <utility>
 
 namespace halfplane::link {
 
@@ -96,52 +100,9 @@ void reference::next(pattern::reader& r, const alignment& a, std::size_t count, 
             out[k] = d_complement[out[k]];
 }
 
-unsigned rotation_order(const signal_set& set, double tolerance)
+unsigned rotation_order(const signal_set& set)
 {
-    const auto& points = set.points();
-    const double slack = tolerance * set.d_min();
-    std::size_t far = 0;
-    for (std::size_t i = 0; i < points.size(); ++i)
-        if (std::abs(points[i]) > std::abs(points[far]))
-            far = i;
-
-    // Points by radius, so that each image is looked for in a thin ring only.
-    std::vector<std::size_t> order(points.size());
-    std::iota(order.begin(), order.end(), std::size_t{0});
-    std::sort(order.begin(), order.end(), [&](auto a, auto b) {
-        return std::abs(points[a]) < std::abs(points[b]);
-    });
-    const auto maps_onto_itself = [&](complex turn) {
-        return std::all_of(order.begin(), order.end(), [&](std::size_t i) {
-            const complex image = points[i] * turn;
-            auto j = std::lower_bound(order.begin(),
-                                      order.end(),
-                                      std::abs(image) - slack,
-                                      [&](auto k, double radius) { return std::abs(points[k]) < radius; });
-            for (; j != order.end() && std::abs(points[*j]) <= std::abs(image) + slack; ++j)
-                if (std::abs(points[*j] - image) <= slack &&
-                    std::abs(set.priors()[*j] - set.priors()[i]) <= 1e-9)
-                    return true;
-            return false;
-        });
-    };
-
-    std::vector<unsigned> candidates;
-    for (std::size_t j = 0; j < points.size(); ++j) {
-        double angle = std::arg(points[j] / points[far]);
-        if (std::abs(std::abs(points[j]) - std::abs(points[far])) > slack || j == far)
-            continue;
-        if (angle < 0)
-            angle += 2 * M_PI;
-        const double n = std::round(2 * M_PI / angle);
-        if (std::abs(2 * std::abs(points[far]) * std::sin((angle - 2 * M_PI / n) / 2)) <= slack)
-            candidates.push_back(static_cast<unsigned>(n));
-    }
-    std::sort(candidates.rbegin(), candidates.rend());
-    for (unsigned n : candidates)
-        if (n > 1 && maps_onto_itself(std::polar(1.0, 2 * M_PI / n)))
-            return n;
-    return 1;
+    return static_cast<unsigned>(count_symmetries(set).rotations);
 }
 
 bool on_a_line(const signal_set& set, double tolerance)

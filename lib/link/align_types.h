@@ -131,9 +131,9 @@ private:
     std::vector<sample> d_points;
 };
 
-/// Order of the rotation symmetry about the origin (1 where there is none), points matched within
-/// `tolerance` × d_min and priors alike.
-unsigned rotation_order(const signal_set& set, double tolerance = 1e-3);
+/// Rotations about the origin that carry the set onto itself, the identity among them (geometry.h's
+/// tolerance).
+unsigned rotation_order(const signal_set& set);
 
 /// Whether all points lie on one line through the origin, so that a mirror image is but a turned one.
 bool on_a_line(const signal_set& set, double tolerance = 1e-3);
