@@ -1,0 +1,99 @@
+# SPDX-License-Identifier: GPL-3.0-or-later
+"""Running links with ideal timing: what is counted lies where the exact rung says, and what is gauged where it was set."""
+
+import json
+
+import numpy as np
+import pytest
+from gnuradio import halfplane
+from scipy import stats
+
+from bench import FIRN, SAMPLES_PER_SYMBOL, assert_account_adds_up, counted, pulse_taps, run_link
+
+# Three sets, each at three Es/N0, about SER 0.1, 0.01 and 0.001.
+CASES = [(name, db) for name, levels in {"psk:8": (11.0, 14.5, 16.8), FIRN: (10.0, 14.0, 16.5), "qam:64": (18.5, 22.0, 24.5)}.items()
+         for db in levels]
+
+
+def test_residual_interference_is_below_60_db():
+    taps = np.array(pulse_taps())
+    both = np.convolve(taps, taps)[len(taps) - 1::SAMPLES_PER_SYMBOL] / np.sum(taps**2)
+    interference = 10 * np.log10(2 * np.sum(both[1:] ** 2))
+    print(f"residual interference {interference:.1f} dB")
+    assert interference < -60
+
+
+@pytest.mark.parametrize("name, es_n0_db", CASES)
+def test_counts_and_gauge(name, es_n0_db):
+    which = halfplane.load_set(name)
+    symbols = 100000
+    report, samples, reference = run_link(which, es_n0_db, symbols, shaped=True, seed=7)
+    total = report["total"]
+    assert_account_adds_up(report, symbols)
+    assert total["judged"] > 0.9 * symbols and total["slips"] == 0
+    assert (total["judged"], total["symbol_errors"], total["bit_errors"]) == counted(which, samples, reference)
+    exact = halfplane.predictor(which).ser(es_n0_db)
+    low, high = (stats.binom.ppf(q, total["judged"], exact) for q in (0.0005, 0.9995))
+    off = (total["es_n0_db"] - es_n0_db) / total["es_n0_db_se"]
+    print(f"{which.name} {es_n0_db} dB: {total['symbol_errors']} errors, {low:.0f} … {high:.0f} expected; gauge off by {off:.2f} se")
+    assert low <= total["symbol_errors"] <= high
+    assert abs(off) < 4
+    assert report["input"] == {"es_n0_db": es_n0_db, "es_n0_db_se": 0.0, "source": "declared"}
+
+
+def test_reported_is_written(tmp_path):
+    """Fifty runs: the final report is in the log each time, and every report before it."""
+    which = halfplane.load_set("psk:4")
+    for run in range(50):
+        log = tmp_path / f"{run}.jsonl"
+        report, _, _ = run_link(which, 8.0, 9000, window=1000, log=log)
+        lines = [json.loads(line) for line in log.read_text().splitlines()]
+        # The log's time went through PMT and has three decimals.
+        last, final = lines[-1], report
+        assert last.pop("time")[:19] == final.pop("time")[:19]
+        assert last == final, run
+        assert final["final"] is True
+        assert [line["sequence"] for line in lines] == list(range(lines[0]["sequence"], lines[0]["sequence"] + len(lines)))
+
+
+def test_window_closes_and_the_last_one_is_counted():
+    which = halfplane.load_set("psk:4")
+    report, _, reference = run_link(which, 20.0, 12345, window=5000)
+    assert report["total"]["in"] == 12345
+    assert len(reference) == 12345 - halfplane.aligner.holdback()
+
+
+def test_the_receivers_own_decisions_are_counted():
+    """Decisions from a third port: every tenth wrong on purpose."""
+    from gnuradio import blocks, gr
+
+    which = halfplane.load_set("psk:4")
+    sent = np.random.default_rng(1).integers(4, size=20000)
+    decided = np.where(np.arange(20000) % 10 == 0, (sent + 1) % 4, sent)
+    points = np.array(which.points)[sent]
+    watch = halfplane.link_watch(which, "", 5000, decisions="receiver")
+    graph = gr.top_block()
+    graph.connect(blocks.vector_source_c(points.tolist()), (watch, 0))
+    graph.connect(blocks.vector_source_s(sent.tolist()), (watch, 1))
+    graph.connect(blocks.vector_source_s(decided.tolist()), (watch, 2))
+    graph.run()
+    report = json.loads(watch.report())
+    assert report["decisions"] == "receiver"
+    assert report["total"]["symbol_errors"] == 2000 and report["total"]["judged"] == 20000
+
+
+@pytest.mark.parametrize("make, message", [
+    (lambda s: halfplane.link_watch(s, "", 0), "link_watch: window is 0"),
+    (lambda s: halfplane.link_watch(s, "", 10, 1.0), "link_watch: confidence is 1"),
+    (lambda s: halfplane.link_watch(s, "", 10, float("nan")), "link_watch: confidence is nan"),
+    (lambda s: halfplane.link_watch(s, "", 10, 0.9, -1.0), "link_watch: symbol_rate is -1"),
+    (lambda s: halfplane.link_watch(s, "", 10, 0.9, 0.0, "mine"), "link_watch: decisions is 'mine'"),
+    (lambda s: halfplane.aligner(s, "draw:1", "none"), "aligner: correction is 'none'"),
+    (lambda s: halfplane.aligner(s, "draw:1", "running", 15), "aligner: memory is 15"),
+    (lambda s: halfplane.aligner(s, "draw:1", "running", 100, float("inf")), "aligner: symbol_rate is inf"),
+    (lambda s: halfplane.aligner(s, "o150:10"), "10"),
+    (lambda s: halfplane.link_log("/nowhere/at/all.jsonl"), "link_log: path is '/nowhere/at/all.jsonl'"),
+])
+def test_refused(make, message):
+    with pytest.raises(ValueError, match=message):
+        make(halfplane.load_set("psk:4"))
