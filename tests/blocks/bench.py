@@ -11,6 +11,8 @@ from gnuradio import blocks, filter as gr_filter, gr, halfplane
 SOURCE = pathlib.Path(os.environ["HALFPLANE_SOURCE_DIR"])
 FIRN = str(SOURCE / "examples" / "sets" / "firn-12.json")
 SAMPLES_PER_SYMBOL = 5
+PULSE_SYMBOLS = 200
+FILL = PULSE_SYMBOLS
 
 
 class wrong(gr.sync_block):
@@ -42,8 +44,8 @@ class tap(gr.sync_block):
 
 
 def pulse_taps():
-    """Root raised cosine over 200 symbols, roll-off 0.35: residual interference is asserted below -60 dB in link.py."""
-    return gr_filter.firdes.root_raised_cosine(1.0, SAMPLES_PER_SYMBOL, 1.0, 0.35, 200 * SAMPLES_PER_SYMBOL + 1)
+    """Root raised cosine over PULSE_SYMBOLS, roll-off 0.35: residual interference is asserted below -60 dB in link.py."""
+    return gr_filter.firdes.root_raised_cosine(1.0, SAMPLES_PER_SYMBOL, 1.0, 0.35, PULSE_SYMBOLS * SAMPLES_PER_SYMBOL + 1)
 
 
 def run_link(which, es_n0_db, symbols, *, pattern="draw:1", expected=None, fault=None, correction="running", seed=1,
@@ -58,7 +60,9 @@ def run_link(which, es_n0_db, symbols, *, pattern="draw:1", expected=None, fault
         noise = halfplane.noise_at(which, es_n0_db, taps, seed)
         energy = halfplane.noise_at.energy(taps)
         chain = [gr_filter.interp_fir_filter_ccf(SAMPLES_PER_SYMBOL, taps), noise,
-                 gr_filter.fir_filter_ccf(SAMPLES_PER_SYMBOL, [t / energy for t in taps])]
+                 gr_filter.fir_filter_ccf(SAMPLES_PER_SYMBOL, [t / energy for t in taps]),
+                 # the two filters filling up: no symbols yet
+                 blocks.skiphead(gr.sizeof_gr_complex, FILL)]
     else:
         noise = halfplane.noise_at(which, es_n0_db, 1.0, seed)
         chain = [noise]
