@@ -413,13 +413,17 @@ std::size_t aligner::process(const std::complex<float>* in,
 {
     std::size_t produced = 0;
     while (count > 0) {
-        const std::size_t piece = std::min<std::size_t>(count, tracker::longest_chunk);
+        // Cut at the same symbols whatever the calls: the outcome must not depend on how a scheduler hands
+        // over.
+        const std::size_t piece =
+            std::min<std::size_t>(count, tracker::longest_chunk - d->taken % tracker::longest_chunk);
         for (std::size_t k = 0; k < piece; ++k)
             d->raw[d->taken + k] = in[k];
         d->taken += piece;
         in += piece;
         count -= piece;
-        d->advance(false);
+        if (d->taken % tracker::longest_chunk == 0)
+            d->advance(false);
         if (d->taken > holdback)
             produced += d->emit(d->taken - holdback, out + produced, reference + produced);
     }
@@ -434,6 +438,7 @@ std::size_t aligner::finish(std::complex<float>* out, reference_t* reference)
 
 void aligner::mark_overflow()
 {
+    d->advance(false);
     d->overflow();
 }
 
