@@ -7,6 +7,7 @@
 #include <pybind11/stl.h>
 
 #include <algorithm>
+#include <sstream>
 
 namespace halfplane::python {
 namespace {
@@ -67,7 +68,7 @@ py::dict rates_over(const predictor& p, const doubles& es_n0_db)
     const auto count = static_cast<std::size_t>(es_n0_db.size());
     {
         py::gil_scoped_release free;
-        for (std::size_t k = 0; k < count; ++k) {
+        parallel_for(count, [&](std::size_t k) {
             const rates r = p.at(linear(in[k]));
             exact.set(k, r.exact);
             facing.set(k, r.facing);
@@ -75,7 +76,7 @@ py::dict rates_over(const predictor& p, const doubles& es_n0_db)
             nearest.set(k, r.nearest);
             std::copy(r.exact.ser_by_point.begin(), r.exact.ser_by_point.end(), point_out + k * size);
             std::copy(r.exact.ber_by_bit.begin(), r.exact.ber_by_bit.end(), bit_out + k * bits);
-        }
+        });
     }
     py::dict out;
     out["exact"] = exact.dict();
@@ -89,17 +90,17 @@ py::dict rates_over(const predictor& p, const doubles& es_n0_db)
 
 py::array_t<double> transitions_over(const predictor& p, const doubles& es_n0_db)
 {
-    const auto size = static_cast<py::ssize_t>(p.set().size());
-    py::array_t<double> out(shape_of(es_n0_db, {size, size}));
+    const std::size_t size = p.set().size();
+    const auto extent = static_cast<py::ssize_t>(size);
+    py::array_t<double> out(shape_of(es_n0_db, {extent, extent}));
     double* to = out.mutable_data();
     const double* in = es_n0_db.data();
     const auto count = static_cast<std::size_t>(es_n0_db.size());
     py::gil_scoped_release free;
-    for (std::size_t k = 0; k < count; ++k)
-        for (py::ssize_t i = 0; i < size; ++i) {
-            const auto row = p.transition_row(linear(in[k]), static_cast<std::size_t>(i));
-            to = std::copy(row.begin(), row.end(), to);
-        }
+    parallel_for(count * static_cast<std::size_t>(size), [&](std::size_t k) {
+        const auto row = p.transition_row(linear(in[k / size]), k % size);
+        std::copy(row.begin(), row.end(), to + k * size);
+    });
     return out;
 }
 
@@ -110,9 +111,11 @@ py::object inverse_over(const doubles& target, const char* what, Solve solve)
 {
     return over(target, [&](double rate) {
         const auto found = solve(rate);
-        if (!found)
-            throw std::invalid_argument(std::string(what) + " " + std::to_string(rate) +
-                                        " cannot be reached between -60 dB and 200 dB");
+        if (!found) {
+            std::ostringstream text;
+            text << what << " " << rate << " cannot be reached between -60 dB and 200 dB";
+            throw std::invalid_argument(text.str());
+        }
         return to_db(*found);
     });
 }

@@ -2,6 +2,8 @@
 // topics: one function for each group of bindings, and the shapes that all of them share.
 #pragma once
 
+#include "parallel.h"
+
 #include <pybind11/numpy.h>
 #include <pybind11/pybind11.h>
 
@@ -17,20 +19,20 @@ namespace py = pybind11;
 using doubles = py::array_t<double, py::array::c_style | py::array::forcecast>;
 using complexes = py::array_t<std::complex<double>, py::array::c_style | py::array::forcecast>;
 
-void bind_sets(py::module_ &m);
-void bind_set_files(py::module_ &m);
-void bind_rates(py::module_ &m);
-void bind_measures(py::module_ &m);
+void bind_sets(py::module_& m);
+void bind_set_files(py::module_& m);
+void bind_rates(py::module_& m);
+void bind_measures(py::module_& m);
 
 /// A copy of a vector as a one-dimensional array.
 template <typename T>
-py::array_t<T> array_of(const std::vector<T> &values)
+py::array_t<T> array_of(const std::vector<T>& values)
 {
     return py::array_t<T>(static_cast<py::ssize_t>(values.size()), values.data());
 }
 
 /// Shape of an array, with further dimensions behind it.
-inline std::vector<py::ssize_t> shape_of(const py::array &a, std::vector<py::ssize_t> more = {})
+inline std::vector<py::ssize_t> shape_of(const py::array& a, std::vector<py::ssize_t> more = {})
 {
     std::vector<py::ssize_t> shape(a.shape(), a.shape() + a.ndim());
     shape.insert(shape.end(), more.begin(), more.end());
@@ -46,18 +48,17 @@ py::object number_or_array(py::array_t<T> a)
     return std::move(a);
 }
 
-/// f of every element, in the shape that came in; the interpreter is free for others meanwhile.
+/// f of every element, in the shape that came in, on all cores; the interpreter is free for others meanwhile.
 template <typename F>
-py::object over(const doubles &x, F f)
+py::object over(const doubles& x, F f)
 {
     py::array_t<double> result(shape_of(x));
-    const double *in = x.data();
-    double *out = result.mutable_data();
+    const double* in = x.data();
+    double* out = result.mutable_data();
     const auto count = static_cast<std::size_t>(x.size());
     {
         py::gil_scoped_release free;
-        for (std::size_t k = 0; k < count; ++k)
-            out[k] = f(in[k]);
+        parallel_for(count, [&](std::size_t k) { out[k] = f(in[k]); });
     }
     return number_or_array(std::move(result));
 }
