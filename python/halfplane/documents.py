@@ -63,23 +63,9 @@ def curve_rows(predictor, es_n0_db):
     return rows
 
 
-def inspect(signal_set):
-    """The facts of a constellation."""
-    facts = {
-        "name": signal_set.name,
-        "size": signal_set.size,
-        "label_bits": signal_set.label_bits,
-        "entropy_bits": signal_set.entropy_bits,
-        "es": signal_set.es,
-        "eb": signal_set.eb,
-        "mean_i": signal_set.mean.real,
-        "mean_q": signal_set.mean.imag,
-        "papr_db": signal_set.papr_db,
-        "d_min": signal_set.d_min,
-    }
-    if not facts["name"]:
-        del facts["name"]
-    return facts
+def inspect(signal_set, tolerance=core.default_tolerance):
+    """The facts of a constellation; distances, edges and symmetries are equal within tolerance · d_min."""
+    return core.inspect(signal_set, tolerance)
 
 
 def curve(predictor, es_n0_db):

@@ -10,5 +10,6 @@ PYBIND11_MODULE(core_python, m)
     halfplane::python::bind_sets(m);
     halfplane::python::bind_set_files(m);
     halfplane::python::bind_rates(m);
+    halfplane::python::bind_geometry(m);
     halfplane::python::bind_measures(m);
 }

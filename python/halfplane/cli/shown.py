@@ -39,7 +39,7 @@ def table(*columns, title=None):
     """An open table: a head, a rule, right-aligned figures. A column is its head, or (head, style)."""
     result = Table(
         title=title, title_justify="left", title_style=STRONG, box=_RULE, show_edge=False, pad_edge=False,
-        header_style=STRONG, padding=(0, 1),
+        header_style=STRONG, padding=(0, 1, 0, 0),
     )  # fmt: skip
     for column in columns:
         head, style = (column, None) if isinstance(column, str) else column
@@ -63,6 +63,8 @@ def facts(pairs, title=None):
 
 def rate(value, ln=None, digits=3):
     """An error rate, 4.321e-05; below the smallest double from its natural logarithm; a dash where not known."""
+    if value == 0 and ln is None:
+        return "0"
     if value is not None and (value >= 1e-300 or ln is None):
         return f"{value:.{digits}e}"
     if ln is None or not math.isfinite(ln):
