@@ -56,14 +56,41 @@ private:
     double* d_at[5];
 };
 
+/// The same and the lists of the exact rung, each with one more dimension.
+class exact_arrays : public rung_arrays
+{
+public:
+    exact_arrays(const predictor& p, const doubles& es_n0_db)
+        : rung_arrays(es_n0_db), d_by_point(shape_of(es_n0_db, {static_cast<py::ssize_t>(p.set().size())})),
+          d_by_bit(shape_of(es_n0_db, {static_cast<py::ssize_t>(p.set().label_bits())})),
+          d_point_at(d_by_point.mutable_data()), d_bit_at(d_by_bit.mutable_data())
+    {
+    }
+
+    void set(std::size_t k, const exact_rung& r)
+    {
+        rung_arrays::set(k, r);
+        std::copy(r.ser_by_point.begin(), r.ser_by_point.end(), d_point_at + k * r.ser_by_point.size());
+        std::copy(r.ber_by_bit.begin(), r.ber_by_bit.end(), d_bit_at + k * r.ber_by_bit.size());
+    }
+
+    py::dict dict()
+    {
+        py::dict out = rung_arrays::dict();
+        out["ser_by_point"] = d_by_point;
+        out["ber_by_bit"] = d_by_bit;
+        return out;
+    }
+
+private:
+    py::array_t<double> d_by_point, d_by_bit;
+    double *d_point_at, *d_bit_at;
+};
+
 py::dict rates_over(const predictor& p, const doubles& es_n0_db)
 {
-    const auto size = static_cast<py::ssize_t>(p.set().size());
-    const auto bits = static_cast<py::ssize_t>(p.set().label_bits());
-    rung_arrays exact(es_n0_db), facing(es_n0_db), union_bound(es_n0_db), nearest(es_n0_db);
-    py::array_t<double> by_point(shape_of(es_n0_db, {size})), by_bit(shape_of(es_n0_db, {bits}));
-    double* point_out = by_point.mutable_data();
-    double* bit_out = by_bit.mutable_data();
+    exact_arrays exact(p, es_n0_db);
+    rung_arrays facing(es_n0_db), union_bound(es_n0_db), nearest(es_n0_db);
     const double* in = es_n0_db.data();
     const auto count = static_cast<std::size_t>(es_n0_db.size());
     {
@@ -74,18 +101,27 @@ py::dict rates_over(const predictor& p, const doubles& es_n0_db)
             facing.set(k, r.facing);
             union_bound.set(k, r.union_bound);
             nearest.set(k, r.nearest);
-            std::copy(r.exact.ser_by_point.begin(), r.exact.ser_by_point.end(), point_out + k * size);
-            std::copy(r.exact.ber_by_bit.begin(), r.exact.ber_by_bit.end(), bit_out + k * bits);
         });
     }
     py::dict out;
     out["exact"] = exact.dict();
-    out["exact"]["ser_by_point"] = by_point;
-    out["exact"]["ber_by_bit"] = by_bit;
     out["facing"] = facing.dict();
     out["union"] = union_bound.dict();
     out["nearest"] = nearest.dict();
     return out;
+}
+
+py::dict displaced_over(const predictor& p, const doubles& es_n0_db, const complexes& means)
+{
+    const std::vector<complex> places(means.data(), means.data() + means.size());
+    exact_arrays exact(p, es_n0_db);
+    const double* in = es_n0_db.data();
+    const auto count = static_cast<std::size_t>(es_n0_db.size());
+    {
+        py::gil_scoped_release free;
+        parallel_for(count, [&](std::size_t k) { exact.set(k, p.displaced(linear(in[k]), places)); });
+    }
+    return exact.dict();
 }
 
 py::array_t<double> transitions_over(const predictor& p, const doubles& es_n0_db)
@@ -97,9 +133,9 @@ py::array_t<double> transitions_over(const predictor& p, const doubles& es_n0_db
     const double* in = es_n0_db.data();
     const auto count = static_cast<std::size_t>(es_n0_db.size());
     py::gil_scoped_release free;
-    parallel_for(count * static_cast<std::size_t>(size), [&](std::size_t k) {
-        const auto row = p.transition_row(linear(in[k / size]), k % size);
-        std::copy(row.begin(), row.end(), to + k * size);
+    parallel_for(count, [&](std::size_t k) {
+        const auto all = p.transitions(linear(in[k]));
+        std::copy(all.begin(), all.end(), to + k * size * size);
     });
     return out;
 }
@@ -197,6 +233,33 @@ ser_by_point (one more dimension of M, by index) and ber_by_bit (one more of lab
             py::arg("es_n0_db"),
             py::arg("index"),
             "P(decided j | sent index) for all j.")
+        .def("displaced",
+             &displaced_over,
+             py::arg("es_n0_db"),
+             py::arg("means"),
+             "Exact rates where point i arrives at means[i] while the detector stays as it is: a dict of "
+             "arrays as\n"
+             "rates()['exact']. means: M finite complex numbers.")
+        .def(
+            "expected_counts",
+            [](const predictor& p, double es_n0_db, const std::vector<std::uint64_t>& sent) {
+                const auto size = static_cast<py::ssize_t>(p.set().size());
+                const auto counts = p.expected_counts(linear(es_n0_db), sent);
+                return py::array_t<double>({size, size}, counts.data());
+            },
+            py::arg("es_n0_db"),
+            py::arg("sent"),
+            "Expected confusion counts [i, j] where point i was sent sent[i] times.")
+        .def("ser_decades_per_db",
+             &rate_over<&predictor::ser_decades_per_db>,
+             py::arg("es_n0_db"),
+             py::arg("rung") = "exact",
+             "Steepness d log10(SER) / d(Es/N0 in dB), negative.")
+        .def("ber_decades_per_db",
+             &rate_over<&predictor::ber_decades_per_db>,
+             py::arg("es_n0_db"),
+             py::arg("rung") = "exact",
+             "Steepness d log10(BER) / d(Es/N0 in dB).")
         .def(
             "facing",
             [](const predictor& p, double es_n0_db) {

@@ -12,4 +12,5 @@ PYBIND11_MODULE(core_python, m)
     halfplane::python::bind_rates(m);
     halfplane::python::bind_geometry(m);
     halfplane::python::bind_measures(m);
+    halfplane::python::bind_simulate(m);
 }

@@ -24,6 +24,7 @@ void bind_set_files(py::module_& m);
 void bind_rates(py::module_& m);
 void bind_geometry(py::module_& m);
 void bind_measures(py::module_& m);
+void bind_simulate(py::module_& m);
 
 /// A copy of a vector as a one-dimensional array.
 template <typename T>
