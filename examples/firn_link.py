@@ -3,9 +3,9 @@
 The Firn line as a flowgraph: sensor data from a slope to a valley hut, with a pattern in place of the data.
 
     test_pattern → point_mapper → pulse shaping → noise_at → gain, phase, frequency, delay      the slope, the air
-    → level control → matched filter → timing → aligner → link_watch → link_log                 the hut
+    → matched filter → level control → timing → aligner → link_watch → link_log                 the hut
 
-Everything from the level control to the timing loop is the host's own; halfplane measures what they make of it.
+Everything from the matched filter to the timing loop is the host's own; halfplane measures what they make of it.
 Run as a program, it sends 200,000 symbols at 14 dB and prints the last report.
 """
 
@@ -61,8 +61,9 @@ class FirnLink(gr.top_block):
             gr_filter.fir_filter_ccf(1, fractional_delay(self.FRACTION)),
         ]
         hut = [
-            analog.agc_cc(3e-4, 1.0, 1.0),
             gr_filter.fir_filter_ccf(1, [tap / energy for tap in pulse]),
+            # The gain of the timing detector goes with the square of the level.
+            analog.agc_cc(3e-4, 1.0, 1.0),
             digital.symbol_sync_cc(
                 digital.TED_GARDNER, SAMPLES_PER_SYMBOL, timing_bandwidth, 1.0, 1.0, 0.05, 1,
                 digital.constellation_bpsk().base(), digital.IR_MMSE_8TAP,

@@ -48,9 +48,13 @@ def curve_rows(predictor, es_n0_db):
     values = np.asarray(es_n0_db, dtype=float)
     arrays = predictor.rates(values)
     unused = _unused_bits(signal_set)
+    # Mutual information is known here for AWGN, whatever the detector.
+    known = core.information(signal_set, values) if predictor.law == "awgn" else {}
     rows = []
     for k, value in enumerate(values):
         row = {"es_n0_db": float(value), "eb_n0_db": eb_n0_db(signal_set, float(value))}
+        if known:
+            row["information"] = {figure: float(known[figure][k]) for figure in ("mi", "bmd_rate")}
         row.update({rung: _rung(arrays[rung], k) for rung in RUNGS})
         exact = arrays["exact"]
         by_bit, by_point = exact["ber_by_bit"][k], exact["ser_by_point"][k]
@@ -76,3 +80,51 @@ def curve(predictor, es_n0_db):
         "detector": predictor.detector,
         "rows": curve_rows(predictor, es_n0_db),
     }
+
+
+def require(predictor, kind, target, rung):
+    """The Es/N0 that a target SER or BER needs on one rung. kind: 'ser' or 'ber'."""
+    solve = {"ser": predictor.es_n0_db_for_ser, "ber": predictor.es_n0_db_for_ber}[kind]
+    es_n0_db = float(solve(target, rung))
+    return {
+        "es_n0_db": es_n0_db,
+        "eb_n0_db": eb_n0_db(predictor.set, es_n0_db),
+        "rung": rung,
+        "law": predictor.law,
+        "detector": predictor.detector,
+        "target": {kind: target},
+        "shannon_gap_db": float(core.shannon_gap_db(predictor.set, es_n0_db)),
+    }
+
+
+def counted_row(predictor, es_n0_db, counts, confidence=0.95):
+    """One row of `simulate`: a tally beside the exact rates."""
+    exact = {"ser": predictor.ser(es_n0_db), "ber": predictor.ber(es_n0_db)}
+    row = {"es_n0_db": es_n0_db, "eb_n0_db": eb_n0_db(predictor.set, es_n0_db)}
+    row.update({field: getattr(counts, field) for field in ("symbols", "symbol_errors", "bits", "bit_errors")})
+    if counts.symbols:
+        row["ser"] = counts.symbol_errors / counts.symbols
+        row["ber"] = counts.bit_errors / counts.bits
+        ser = core.binomial_interval(counts.symbol_errors, counts.symbols, confidence)
+        ber = core.clumped_interval(counts.bit_errors, counts.bits, counts.bit_dispersion, confidence)
+        for kind, ends in (("ser", ser), ("ber", ber)):
+            row.update({f"{kind}_{end}": value for end, value in zip(("low", "high"), ends) if value is not None})
+        spread = math.sqrt(counts.symbols * exact["ser"] * (1 - exact["ser"]))
+        if spread > 0:
+            row["z"] = (counts.symbol_errors - counts.symbols * exact["ser"]) / spread
+    row["exact"] = {kind: rate for kind, rate in exact.items() if rate > 0}
+    return row
+
+
+def rare_row(predictor, es_n0_db, estimate):
+    """One row of `simulate --rare`: an estimate by importance sampling, which counts no errors."""
+    exact = {"ser": predictor.ser(es_n0_db), "ber": predictor.ber(es_n0_db)}
+    row = {"es_n0_db": es_n0_db, "eb_n0_db": eb_n0_db(predictor.set, es_n0_db), "symbols": estimate["symbols"]}
+    for kind in ("ser", "ber"):
+        half = 1.959964 * estimate[kind + "_se"]
+        row[kind] = estimate[kind]
+        row[kind + "_low"], row[kind + "_high"] = max(0.0, estimate[kind] - half), estimate[kind] + half
+    row["exact"] = {kind: rate for kind, rate in exact.items() if rate > 0}
+    if estimate["ser_se"] > 0:
+        row["z"] = (estimate["ser"] - exact["ser"]) / estimate["ser_se"]
+    return row
