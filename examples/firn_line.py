@@ -18,13 +18,13 @@ PATTERN = "draw:2026"
 STEPS = 6
 # The symbol error rates between which the steps lie unless --es-n0 says otherwise.
 HIGHEST_SER, LOWEST_SER = 0.2, 3e-5
-FEWEST_SYMBOLS, MOST_SYMBOLS = 50_000, 20_000_000
+FEWEST_SYMBOLS, MOST_SYMBOLS = 400_000, 20_000_000
 
 
 @click.command(context_settings={"help_option_names": ["-h", "--help"]})
 @click.option("--set", "what", default=str(HERE / "sets" / "firn-12.json"), metavar="SET", help="Constellation: a name or a set file. [firn-12]")
 @click.option("--es-n0", "es_n0", type=arguments.Range(), help="Es/N0 in dB: LO..HI/STEP or one number. [six steps that suit the set]")
-@click.option("--errors", type=arguments.Count(), default=400, show_default=True, help="Symbol errors to wait for at each step, as the exact rate has it.")
+@click.option("--errors", type=arguments.Count(), default=1000, show_default=True, help="Symbol errors to wait for at each step, as the exact rate has it.")
 @click.option("--out", type=click.Path(file_okay=False, path_type=Path), default=Path("firn-out"), show_default=True, help="Folder for plots and log; files of an earlier run are replaced.")
 def main(what, es_n0, errors, out):
     """Run the Firn line in GNU Radio and compare what it counts with what its constellation permits."""

@@ -36,7 +36,7 @@ class FirnLink(gr.top_block):
     DELAY = 1237  # samples
     FRACTION = 0.37  # of a sample
 
-    def __init__(self, signal_set, pattern, es_n0_db, symbols, log=None, seed=1, timing_bandwidth=0.01, window=10000):
+    def __init__(self, signal_set, pattern, es_n0_db, symbols, log=None, seed=1, timing_bandwidth=0.1, window=10000):
         super().__init__("Firn line")
         pulse = firdes.root_raised_cosine(
             1.0, SAMPLES_PER_SYMBOL, 1.0, ROLL_OFF, PULSE_SYMBOLS * SAMPLES_PER_SYMBOL + 1

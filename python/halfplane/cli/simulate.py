@@ -2,6 +2,7 @@
 """`halfplane simulate`: errors counted in seeded noise, beside the exact rate."""
 
 import math
+import os
 import sys
 
 import click
@@ -30,9 +31,9 @@ def command(what, es_n0, eb_n0, law, detector, errors, max_symbols, seed, rare, 
     options = {"law": law, "detector": predictor.detector, "seed": seed, "max_symbols": max_symbols}
     rows, symbols, seconds, stopped = [], 0, 0.0, False
     # The bar goes to stderr: stdout holds the result alone.
-    console = shown.console(sys.stderr)
+    console = shown.console(sys.stderr if sys.stderr.isatty() else open(os.devnull, "w"))
     columns = (TextColumn("{task.description}"), BarColumn(), TextColumn("{task.percentage:3.0f} %"), TimeRemainingColumn())
-    with Progress(*columns, console=console, transient=True, disable=not console.is_terminal) as bar:
+    with Progress(*columns, console=console, transient=True) as bar:
         for value in values:
             task = bar.add_task(f"{shown.db(value)} dB", total=1.0)
 
