@@ -21,6 +21,9 @@ enum class exclusion : reference_t {
 };
 constexpr int exclusion_count = 4;
 
-constexpr reference_t code(exclusion e) noexcept { return static_cast<reference_t>(e); }
+constexpr reference_t code(exclusion e) noexcept
+{
+    return static_cast<reference_t>(e);
+}
 
 } // namespace halfplane

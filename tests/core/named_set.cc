@@ -123,7 +123,7 @@ TEST(NamedSet, PointsOrderAndLabelsAreFrozen)
 }
 
 TEST(NamedSet, PskStandsOnTheUnitCircleAndIsGrayWhereThatIsPossible)
-    // The reference angle is itself rounded: 2e-15 is about 2π·ε.
+// The reference angle is itself rounded: 2e-15 is about 2π·ε.
 {
     for (std::size_t m = 2; m <= 4096; m = m < 70 ? m + 1 : 2 * m - 3) {
         const auto set = named_set("psk:" + std::to_string(m));
