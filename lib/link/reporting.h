@@ -2,37 +2,24 @@
 // reporting: the other half of watch: totals of the run, predictions, and the report they make.
 #pragma once
 
+#include "expected_errors.h"
 #include "halfplane/link/watch.h"
 #include "halfplane/ser_curve.h"
 #include "halfplane/shortfall.h"
-
-#include <array>
+#include "report_parts.h"
 
 namespace halfplane::link {
-
-/// Σ n·rate over windows, by rung: what errors the predictions expect.
-struct expected_errors {
-    static constexpr std::size_t rungs = 4;
-    std::array<long double, rungs> symbol{},
-        bit{};                       ///< Σ n·SER, Σ n·BER in the order exact, facing, union, nearest
-    std::uint64_t symbols = 0;       ///< n: judged symbols spoken of
-    std::vector<double> transitions; ///< Σ n_i·P(j|i), row by row; empty for large sets
-
-    void add(const predictor& p, const rates& at_es_n0, double es_n0, const tally& counts);
-};
 
 struct watch::reporting {
     /// Largest set for which every P(j|i) is evaluated each window; beyond, transitions stand without
     /// expectation.
     static constexpr std::size_t most_points_for_transitions = 256;
-    /// Most transitions that a report lists: those counted most often.
-    static constexpr std::size_t most_transitions = 4096;
     /// Judged symbols gauged together for the shortfall: fewer, and the scatter of the gauge bends the curve.
     static constexpr std::uint64_t stretch_symbols = 10000;
 
     reporting(const signal_set& set, watch_options options);
     report report_of(window&& w, bool final);
-    nlohmann::json settings() const;
+    nlohmann::json settings() const { return settings_of(d_set, d_predictor, d_options); }
 
 private:
     /// The rungs at this Es/N0; the last answer is kept, as window and run mostly ask for the same.
@@ -42,17 +29,7 @@ private:
     void add_input(const window& w);
     std::optional<expected_errors> prediction_of_run() const;
 
-    struct run_intervals {
-        double dispersion = 1; ///< of error counts over blocks
-        double confidence;
-        interval ser(std::uint64_t errors, std::uint64_t symbols) const;
-        interval ber(const tally& counts) const;
-    };
-    report counts_and_gauge(const tally& counts,
-                            const std::optional<gauge_result>& fit,
-                            const run_intervals& ends) const;
     report total(const window& w, const std::optional<gauge_result>& fit, const run_intervals& ends) const;
-    report transitions(const std::optional<expected_errors>& expected, std::uint64_t& unlisted) const;
     std::optional<shortfall> at_decision(const run_intervals& ends) const;
     std::optional<shortfall> at_input(const run_intervals& ends) const;
 

@@ -1,0 +1,243 @@
+// SPDX-License-Identifier: GPL-3.0-or-later
+// report_parts: pure conversions from measured things to parts of the report.
+#include "report_parts.h"
+
+#include <algorithm>
+#include <chrono>
+#include <cmath>
+#include <ctime>
+
+namespace halfplane::link {
+
+namespace {
+
+constexpr double degrees = 57.29577951308232; // 180/π
+
+report rates_of(const std::array<double, 4>& ser, const std::array<double, 4>& ber)
+{
+    static constexpr const char* names[] = {"exact", "facing", "union", "nearest"};
+    report all;
+    for (std::size_t k = 0; k < 4; ++k) {
+        report one = report::object();
+        if (ser[k] > 0) // below the smallest double nothing can be said here
+            one["ser"] = ser[k];
+        if (ber[k] > 0)
+            one["ber"] = ber[k];
+        all[names[k]] = std::move(one);
+    }
+    return all;
+}
+
+void put_interval(report& out, const std::string& name, double rate, const interval& ends)
+{
+    out[name] = rate;
+    if (ends.low)
+        out[name + "_low"] = *ends.low;
+    out[name + "_high"] = ends.high;
+}
+
+} // namespace
+
+std::string utc_now()
+{
+    const auto now = std::chrono::system_clock::now();
+    const std::time_t seconds = std::chrono::system_clock::to_time_t(now);
+    std::tm parts{};
+    gmtime_r(&seconds, &parts);
+    char text[32];
+    std::strftime(text, sizeof text, "%Y-%m-%dT%H:%M:%SZ", &parts);
+    return text;
+}
+
+interval run_intervals::ser(std::uint64_t errors, std::uint64_t symbols) const
+{
+    return dispersion > 1 ? clumped_interval(errors, symbols, dispersion, confidence)
+                          : binomial_interval(errors, symbols, confidence);
+}
+
+/*!
+ * Bit errors are a sum of N clumps, N itself dispersed: Var = E[N]·(Var h + D·E[h]²), so that the dispersion
+ * of the sum is Σh²/Σh + (D − 1)·h̄.
+ */
+interval run_intervals::ber(const tally& counts) const
+{
+    double clumping = counts.bit_dispersion();
+    if (counts.symbol_errors > 0)
+        clumping += (dispersion - 1) * static_cast<double>(counts.bit_errors) /
+                    static_cast<double>(counts.symbol_errors);
+    else
+        clumping = dispersion;
+    return clumped_interval(counts.bit_errors, counts.bits, clumping, confidence);
+}
+
+/// Keys in alphabetic order, no spaces, doubles by their shortest text: anyone can form the digest again.
+nlohmann::json settings_of(const signal_set& set, const predictor& p, const watch_options& options)
+{
+    nlohmann::json s;
+    s["set"] = set.name();
+    for (std::size_t i = 0; i < set.size(); ++i) {
+        s["points"].push_back({set.points()[i].real(), set.points()[i].imag()});
+        s["labels"].push_back(set.label_string(i));
+        if (!set.uniform())
+            s["priors"].push_back(set.priors()[i]);
+    }
+    s["pattern"] = options.pattern;
+    s["law"] = p.channel().name();
+    s["detector"] = p.rule() == detector::map ? "map" : "ml";
+    s["decisions"] = options.receiver_decisions ? "receiver" : "own";
+    s["confidence"] = options.confidence;
+    s["window"] = options.window;
+    if (options.symbol_rate > 0)
+        s["symbol_rate"] = options.symbol_rate;
+    return s;
+}
+
+report rates_of(const rates& r)
+{
+    std::array<double, 4> ser, ber;
+    const auto rungs = in_order(r);
+    for (std::size_t k = 0; k < 4; ++k) {
+        ser[k] = rungs[k]->ser;
+        ber[k] = rungs[k]->ber;
+    }
+    return rates_of(ser, ber);
+}
+
+report rates_of(const expected_errors& e)
+{
+    std::array<double, 4> ser, ber;
+    for (std::size_t k = 0; k < 4; ++k) {
+        ser[k] = static_cast<double>(e.symbol[k] / static_cast<long double>(e.symbols));
+        ber[k] = static_cast<double>(e.bit[k] / static_cast<long double>(e.symbols));
+    }
+    return rates_of(ser, ber);
+}
+
+report account_of(const tally& counts, std::uint64_t pending)
+{
+    report out;
+    out["in"] = counts.accounted() + pending;
+    out["judged"] = counts.symbols;
+    out["pending"] = pending;
+    out["nonfinite"] = counts.nonfinite;
+    out["excluded"] = {{"before_lock", counts.excluded[0]},
+                       {"slip", counts.excluded[1]},
+                       {"signal_lost", counts.excluded[2]},
+                       {"overflow", counts.excluded[3]}};
+    return out;
+}
+
+report input_of(const input_snr& input)
+{
+    return {{"es_n0_db", input.es_n0_db},
+            {"es_n0_db_se", input.es_n0_db_se},
+            {"source", input.measured ? "measured" : "declared"}};
+}
+
+report lock_of(const lock_status& lock)
+{
+    report out;
+    out["state"] = to_string(lock.state);
+    if (lock.state == lock_state::searching || lock.state == lock_state::lost)
+        return out; // nothing else is known
+    out["delay"] = lock.delay;
+    out["rotation_deg"] = lock.rotation_deg;
+    out["mirrored"] = lock.mirrored;
+    out["inverted"] = lock.inverted;
+    out["frequency"] = lock.frequency;
+    return out;
+}
+
+report seconds_of(const second_counts& s)
+{
+    report out;
+    out["errored"] = s.errored();
+    out["severely_errored"] = s.severely_errored();
+    out["unavailable"] = s.unavailable();
+    out["available"] = s.available();
+    out["unmeasured"] = s.unmeasured();
+    if (s.available() > 0) {
+        const auto available = static_cast<double>(s.available());
+        out["errored_ratio"] = static_cast<double>(s.errored()) / available;
+        out["severely_errored_ratio"] = static_cast<double>(s.severely_errored()) / available;
+    }
+    return out;
+}
+
+report shortfall_of(const shortfall& s)
+{
+    report out;
+    if (s.db)
+        out["db"] = *s.db;
+    if (s.low)
+        out["db_low"] = *s.low;
+    if (s.high)
+        out["db_high"] = *s.high;
+    return out;
+}
+
+report counts_and_gauge(const signal_set& set,
+                        const tally& counts,
+                        const std::optional<gauge_result>& fit,
+                        const run_intervals& ends)
+{
+    report out;
+    out["symbols"] = counts.symbols;
+    out["symbol_errors"] = counts.symbol_errors;
+    out["bits"] = counts.bits;
+    out["bit_errors"] = counts.bit_errors;
+    if (counts.symbols > 0) {
+        const auto share = [](std::uint64_t k, std::uint64_t n) {
+            return static_cast<double>(k) / static_cast<double>(n);
+        };
+        put_interval(out,
+                     "ser",
+                     share(counts.symbol_errors, counts.symbols),
+                     ends.ser(counts.symbol_errors, counts.symbols));
+        put_interval(out, "ber", share(counts.bit_errors, counts.bits), ends.ber(counts));
+    }
+    if (!fit)
+        return out;
+    const double g2 = std::norm(fit->gain), o2 = std::norm(fit->offset);
+    out["es_n0_db"] = to_db(fit->es_n0);
+    out["es_n0_db_se"] = fit->es_n0_db_se;
+    out["eb_n0_db"] = to_db(fit->es_n0 / set.entropy_bits());
+    out["gain_db"] = to_db(g2);
+    out["phase_deg"] = std::arg(fit->gain) * degrees;
+    if (o2 > 0) // relative to the received Es
+        out["offset_db"] = to_db(o2 / (g2 * set.es()));
+    out["evm_rms"] = fit->evm_rms;
+    out["mer_db"] = fit->mer_db;
+    return out;
+}
+
+report transitions_of(const transition_counts& counted,
+                      const std::vector<double>& expected,
+                      std::size_t set_size,
+                      std::uint64_t& unlisted)
+{
+    auto all = counted.sorted();
+    unlisted = 0;
+    if (all.size() > most_transitions) {
+        const auto cut = all.begin() + most_transitions;
+        std::nth_element(all.begin(), cut, all.end(), [](const transition& a, const transition& b) {
+            return a.count > b.count;
+        });
+        for (auto t = cut; t != all.end(); ++t)
+            unlisted += t->count;
+        all.erase(cut, all.end());
+        std::sort(all.begin(), all.end(), [](const transition& a, const transition& b) {
+            return a.from != b.from ? a.from < b.from : a.to < b.to;
+        });
+    }
+    report rows = report::array();
+    for (const auto& t : all) {
+        report row = {t.from, t.to, t.count};
+        if (!expected.empty())
+            row.push_back(expected[t.from * set_size + t.to]);
+        rows.push_back(std::move(row));
+    }
+    return rows;
+}
+
+} // namespace halfplane::link

@@ -1,0 +1,48 @@
+// SPDX-License-Identifier: GPL-3.0-or-later
+// report_parts: pure conversions from measured things to parts of the report.
+#pragma once
+
+#include "expected_errors.h"
+#include "halfplane/gauge.h"
+#include "halfplane/interval.h"
+#include "halfplane/link/watch.h"
+#include "halfplane/shortfall.h"
+
+#include <optional>
+#include <string>
+#include <vector>
+
+namespace halfplane::link {
+
+/// Most transitions that a report lists: those counted most often.
+inline constexpr std::size_t most_transitions = 4096;
+
+/// Intervals of the run, widened where errors cluster.
+struct run_intervals {
+    double dispersion = 1; ///< of error counts over blocks
+    double confidence;
+    interval ser(std::uint64_t errors, std::uint64_t symbols) const;
+    interval ber(const tally& counts) const;
+};
+
+std::string utc_now(); ///< RFC 3339, whole seconds
+nlohmann::json settings_of(const signal_set& set, const predictor& p, const watch_options& options);
+
+report counts_and_gauge(const signal_set& set,
+                        const tally& counts,
+                        const std::optional<gauge_result>& fit,
+                        const run_intervals& ends);
+report rates_of(const rates& r);
+report rates_of(const expected_errors& e);
+report account_of(const tally& counts, std::uint64_t pending);
+/// Rows of [from, to, count, expected], `expected` row by row or empty; `unlisted` becomes what was cut off.
+report transitions_of(const transition_counts& counted,
+                      const std::vector<double>& expected,
+                      std::size_t set_size,
+                      std::uint64_t& unlisted);
+report input_of(const input_snr& input);
+report shortfall_of(const shortfall& s);
+report lock_of(const lock_status& lock);
+report seconds_of(const second_counts& s);
+
+} // namespace halfplane::link
