@@ -48,74 +48,163 @@ moments& moments::operator+=(const moments& o) noexcept
     return *this;
 }
 
+void turning_gain::undo(const sample* r, std::uint64_t first, std::size_t count, sample* out) const
+{
+    // Whole cycles are dropped before they cost digits.
+    const double cycles = std::fmod(frequency * static_cast<double>(first - at), 1.0);
+    std::vector<sample> turn(count);
+    phasors(-2 * M_PI * cycles - std::arg(gain), -2 * M_PI * frequency, count, turn.data());
+    const auto scale = static_cast<float>(1 / std::abs(gain));
+    for (std::size_t k = 0; k < count; ++k)
+        out[k] = times(r[k], turn[k] * scale);
+}
+
 void fetch(const ring<sample>& raw, bool mirrored, std::uint64_t begin, std::uint64_t end, sample* out)
 {
     for (std::uint64_t k = begin; k < end; ++k)
         *out++ = mirrored ? std::conj(raw[k]) : raw[k];
 }
 
+namespace {
+
+/// Moments of consecutive blocks of `stretch` symbols, and where their middles lie before the end.
+struct blocks_of_moments {
+    std::vector<moments> sums;
+    std::vector<double> at;
+    std::size_t count = 0; ///< symbols in all
+
+    blocks_of_moments(
+        reference& ref, const ring<sample>& raw, const alignment& a, std::uint64_t begin, std::uint64_t end)
+        : count(end - begin)
+    {
+        std::vector<sample> z(count);
+        std::vector<std::uint16_t> sent(count);
+        fetch(raw, a.mirrored, begin, end, z.data());
+        ref.read(a, begin, count, sent.data());
+        for (std::size_t k = 0; k < count; k += stretch) {
+            const std::size_t n = std::min(stretch, count - k);
+            sums.emplace_back().add(&z[k], &sent[k], ref.points().data(), n);
+            at.push_back(static_cast<double>(k) + static_cast<double>(n - 1) / 2 -
+                         static_cast<double>(count));
+        }
+    }
+};
+
+/// Gain and frequency of the blocks from `first` on, |frequency| ≤ 2e-4.
+class line_fit
+{
+public:
+    line_fit(const blocks_of_moments& blocks, std::size_t first) : d_blocks(blocks), d_first(first)
+    {
+        for (std::size_t j = first; j < blocks.sums.size(); ++j) {
+            d_sent += blocks.sums[j].sent();
+            d_received += blocks.sums[j].received();
+            d_used += blocks.sums[j].n;
+        }
+        if (!empty())
+            find_frequency();
+    }
+
+    bool empty() const noexcept { return !(d_sent > 0) || !(d_received > 0); }
+
+    /// Σ|r − gain·s·e^…|² of one block, means taken out, which may lie outside the blocks fitted.
+    double rest(std::size_t j) const
+    {
+        const auto& b = d_blocks.sums[j];
+        const complex g = d_spectrum / d_sent * std::polar(1.0, 2 * M_PI * d_frequency * d_blocks.at[j]);
+        return b.received() - 2 * (std::conj(g) * b.cross()).real() + std::norm(g) * b.sent();
+    }
+
+    fit result(std::uint64_t end) const
+    {
+        fit f;
+        f.frequency = d_frequency;
+        f.end = end;
+        f.gain = d_spectrum / d_sent;
+        f.standing_gain = spectrum(0) / d_sent;
+        f.coefficient = std::min(1.0, std::abs(d_spectrum) / std::sqrt(d_sent * d_received));
+        f.symbols = static_cast<std::size_t>(d_used);
+        const double rho2 = f.coefficient * f.coefficient;
+        const double snr = rho2 / std::max(1 - rho2, 1e-9);
+        f.frequency_sd = std::sqrt(6 / (snr * d_used)) / (2 * M_PI * d_used);
+        return f;
+    }
+
+private:
+    complex spectrum(double f) const
+    {
+        complex sum{};
+        for (std::size_t j = d_first; j < d_blocks.sums.size(); ++j)
+            sum += d_blocks.sums[j].cross() * std::polar(1.0, -2 * M_PI * f * d_blocks.at[j]);
+        return sum;
+    }
+
+    void find_frequency()
+    {
+        const double step = 1 / (8.0 * static_cast<double>(d_blocks.count));
+        const int steps = static_cast<int>(std::ceil(widest_frequency / step));
+        int best = 0;
+        double highest = -1;
+        for (int i = -steps; i <= steps; ++i)
+            if (const double p = std::norm(spectrum(i * step)); p > highest) {
+                highest = p;
+                best = i;
+            }
+        double f = best * step;
+        for (double width = step; width > step / 100;
+             width /= 3) { // parabolas through three points, ever narrower
+            const double low = std::norm(spectrum(f - width)), mid = std::norm(spectrum(f)),
+                         high = std::norm(spectrum(f + width));
+            const double bend = low - 2 * mid + high;
+            if (bend < 0)
+                f += std::clamp(0.5 * (low - high) / bend, -1.0, 1.0) * width;
+        }
+        d_frequency = f;
+        d_spectrum = spectrum(f);
+    }
+
+    const blocks_of_moments& d_blocks;
+    const std::size_t d_first;
+    double d_sent = 0, d_received = 0, d_used = 0, d_frequency = 0;
+    complex d_spectrum{};
+};
+
+/*!
+ * First block from which on the signal is what it is at the end: a receiver that starts hands over filters
+ * filling up and loops pulling in, and a gain learnt from those is wrong for long. The second half of the
+ * stretch is fitted, and blocks before it are taken in while what they leave over is like what the half
+ * leaves: six standard deviations of a sum of squares.
+ */
+std::size_t first_sound(const blocks_of_moments& blocks)
+{
+    const std::size_t half = blocks.sums.size() / 2;
+    const line_fit late(blocks, half);
+    if (late.empty())
+        return 0;
+    double rest = 0, symbols = 0;
+    for (std::size_t j = half; j < blocks.sums.size(); ++j) {
+        rest += late.rest(j);
+        symbols += blocks.sums[j].n;
+    }
+    std::size_t first = half;
+    for (; first > 0; --first) {
+        const double n = blocks.sums[first - 1].n;
+        if (late.rest(first - 1) > rest / symbols * (n + 6 * std::sqrt(n)))
+            break;
+    }
+    return first;
+}
+
+} // namespace
+
 std::optional<fit> fit_stretch(
     reference& ref, const ring<sample>& raw, const alignment& a, std::uint64_t begin, std::uint64_t end)
 {
-    const std::size_t count = end - begin;
-    std::vector<sample> z(count);
-    std::vector<std::uint16_t> sent(count);
-    fetch(raw, a.mirrored, begin, end, z.data());
-    ref.read(a, begin, count, sent.data());
-
-    std::vector<complex> cross;
-    std::vector<double> at;
-    double sent_energy = 0, received_energy = 0, used = 0;
-    for (std::size_t k = 0; k < count; k += stretch) {
-        const std::size_t n = std::min(stretch, count - k);
-        moments m;
-        m.add(&z[k], &sent[k], ref.points().data(), n);
-        cross.push_back(m.cross());
-        at.push_back(static_cast<double>(k) + static_cast<double>(n - 1) / 2 - static_cast<double>(count));
-        sent_energy += m.sent();
-        received_energy += m.received();
-        used += m.n;
-    }
-    if (!(sent_energy > 0) || !(received_energy > 0))
+    const blocks_of_moments blocks(ref, raw, a, begin, end);
+    const line_fit line(blocks, first_sound(blocks));
+    if (line.empty())
         return std::nullopt;
-
-    const auto spectrum = [&](double f) {
-        complex sum{};
-        for (std::size_t j = 0; j < cross.size(); ++j)
-            sum += cross[j] * std::polar(1.0, -2 * M_PI * f * at[j]);
-        return sum;
-    };
-    const double step = 1 / (8.0 * static_cast<double>(count));
-    const int steps = static_cast<int>(std::ceil(widest_frequency / step));
-    int best = 0;
-    double highest = -1;
-    for (int i = -steps; i <= steps; ++i)
-        if (const double p = std::norm(spectrum(i * step)); p > highest) {
-            highest = p;
-            best = i;
-        }
-    double f = best * step;
-    for (double width = step; width > step / 100;
-         width /= 3) { // parabolas through three points, ever narrower
-        const double low = std::norm(spectrum(f - width)), mid = std::norm(spectrum(f)),
-                     high = std::norm(spectrum(f + width));
-        const double bend = low - 2 * mid + high;
-        if (bend < 0)
-            f += std::clamp(0.5 * (low - high) / bend, -1.0, 1.0) * width;
-    }
-
-    fit result;
-    const complex x = spectrum(f);
-    result.frequency = f;
-    result.end = end;
-    result.gain = x / sent_energy;
-    result.standing_gain = spectrum(0) / sent_energy;
-    result.coefficient = std::min(1.0, std::abs(x) / std::sqrt(sent_energy * received_energy));
-    result.symbols = static_cast<std::size_t>(used);
-    const double rho2 = result.coefficient * result.coefficient;
-    const double snr = rho2 / std::max(1 - rho2, 1e-9);
-    result.frequency_sd = std::sqrt(6 / (snr * used)) / (2 * M_PI * used);
-    return result;
+    return line.result(end);
 }
 
 double agreement(reference& ref,

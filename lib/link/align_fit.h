@@ -38,8 +38,9 @@ struct fit {
     std::uint64_t end = 0; ///< one past the last symbol
 };
 
-/// Least squares over symbols begin … end − 1 under an alignment, |frequency| ≤ 2e-4; nothing where the
-/// samples are empty.
+/// Least squares over symbols begin … end − 1 under an alignment, |frequency| ≤ 2e-4, without what stands at
+/// their beginning and is not like their second half (a receiver that starts); nothing where the samples are
+/// empty.
 std::optional<fit> fit_stretch(
     reference& ref, const ring<sample>& raw, const alignment& a, std::uint64_t begin, std::uint64_t end);
 
@@ -54,6 +55,16 @@ double agreement(reference& ref,
                  const fit& f,
                  std::uint64_t begin,
                  std::uint64_t end);
+
+/// A gain that turns steadily and is not learnt from what it corrects.
+struct turning_gain {
+    complex gain{1, 0};
+    double frequency = 0; ///< cycles a symbol
+    std::uint64_t at = 0; ///< the symbol of which `gain` speaks
+
+    /// out[k] = r[k]/gain as of symbol first + k.
+    void undo(const sample* r, std::uint64_t first, std::size_t count, sample* out) const;
+};
 
 /// Samples begin … end − 1, mirror undone.
 void fetch(const ring<sample>& raw, bool mirrored, std::uint64_t begin, std::uint64_t end, sample* out);

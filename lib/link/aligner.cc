@@ -5,6 +5,7 @@
 #include "align_fit.h"
 #include "align_local.h"
 #include "align_search.h"
+#include "align_split.h"
 #include "align_track.h"
 
 #include <algorithm>
@@ -64,9 +65,7 @@ struct aligner::impl {
     lock_status status;
     std::vector<lock_event> events;
     alignment where;
-    complex held_gain{1, 0}; // correction::held: gain at symbol held_at, and its frequency
-    double held_frequency = 0;
-    std::uint64_t held_at = 0;
+    turning_gain standing;             // correction::held
     std::uint64_t onset = 0;           // first symbol of the doubt
     std::optional<std::uint64_t> mark; // symbol before which samples are known to be missing
     exclusion cause = exclusion::before_lock;
@@ -112,9 +111,7 @@ struct aligner::impl {
         set_status(gain, f.frequency);
         // A frequency that cannot be told from none is none: frozen, it would turn for ever.
         const bool turning = std::abs(f.frequency) > 4 * f.frequency_sd;
-        held_gain = turning ? gain : f.standing_gain;
-        held_frequency = turning ? f.frequency : 0;
-        held_at = symbol;
+        standing = {turning ? gain : f.standing_gain, turning ? f.frequency : 0, symbol};
         ref.seek(reader, where, done);
         enter(lock_state::held, symbol);
     }
@@ -150,31 +147,14 @@ struct aligner::impl {
             codes[done + k] = static_cast<reference_t>(sent[k]);
         }
         if (options.mode == correction::held)
-            correct_held(z.data(), count, y.data());
+            standing.undo(z.data(), done, count, y.data());
         else if (options.mode == correction::off)
-            correct_rotation(z.data(), count, y.data());
+            turning_gain{std::polar(1.0, status.rotation_deg * M_PI / 180)}.undo(
+                z.data(), done, count, y.data());
         for (std::size_t k = 0; k < count; ++k)
             corrected[done + k] = finite(z[k]) ? y[k] : raw[done + k];
         done += count;
         track.advance(status.state == lock_state::doubtful);
-    }
-
-    void correct_held(const sample* z, std::size_t count, sample* y) const
-    {
-        // Whole cycles are dropped before they cost digits.
-        const double cycles = std::fmod(held_frequency * static_cast<double>(done - held_at), 1.0);
-        std::array<sample, tracker::longest_chunk> turn;
-        phasors(-2 * M_PI * cycles - std::arg(held_gain), -2 * M_PI * held_frequency, count, turn.data());
-        const auto scale = static_cast<float>(1 / std::abs(held_gain));
-        for (std::size_t k = 0; k < count; ++k)
-            y[k] = times(z[k], turn[k] * scale);
-    }
-
-    void correct_rotation(const sample* z, std::size_t count, sample* y) const
-    {
-        const sample back(std::polar(1.0, -status.rotation_deg * M_PI / 180));
-        for (std::size_t k = 0; k < count; ++k)
-            y[k] = times(z[k], back);
     }
 
     void pass_locked(std::size_t least)
@@ -250,65 +230,13 @@ struct aligner::impl {
             track.trust(coefficient);
     }
 
-    /// Log-likelihood ratio, symbol by symbol, that alignment `a` holds against no alignment at all.
-    std::vector<double> evidence(const alignment& a, std::uint64_t begin, std::uint64_t end)
-    {
-        std::vector<std::uint16_t> sent(end - begin);
-        ref.read(a, begin, sent.size(), sent.data());
-        const double rho2 = track.coefficient() * track.coefficient();
-        const double noise = std::max(set.es() * (1 / rho2 - 1), set.d_min() * set.d_min() / 16);
-        const double apart = noise + 2 * (set.es() - std::norm(set.mean()));
-        std::vector<double> llr(sent.size());
-        for (std::size_t k = 0; k < llr.size(); ++k) {
-            const double e = std::norm(complex(fitted[begin + k]) - set.points()[sent[k]]);
-            llr[k] =
-                std::isfinite(e) ? std::max(std::log(apart / noise) + e / apart - e / noise, -10.0) : 0.0;
-        }
-        return llr;
-    }
-
-    /// First symbol from which the old alignment no longer holds, with the doubtful ones counted to the gap.
-    std::uint64_t last_of_old(std::uint64_t begin, std::uint64_t end)
-    {
-        const auto llr = evidence(where, begin, end);
-        double sum = 0, most = 0;
-        for (double l : llr)
-            most = std::max(most, sum += l);
-        sum = 0;
-        for (std::size_t k = 0; k <= llr.size(); ++k) {
-            if (sum >= most - certainty)
-                return begin + k;
-            if (k < llr.size())
-                sum += llr[k];
-        }
-        return end;
-    }
-
-    /// One past the last symbol at which the new alignment does not yet hold for certain.
-    std::uint64_t first_of_new(const alignment& a, std::uint64_t begin, std::uint64_t end)
-    {
-        const auto llr = evidence(a, begin, end);
-        double sum = 0, most = 0;
-        for (auto l = llr.rbegin(); l != llr.rend(); ++l)
-            most = std::max(most, sum += *l);
-        sum = 0;
-        for (std::size_t k = llr.size();; --k) {
-            if (sum >= most - certainty)
-                return begin + k;
-            if (k == 0)
-                return begin;
-            sum += llr[k - 1];
-        }
-    }
-
-    /// Odds of e^5 to one decide on which side of a split a symbol lies; what is less sure is excluded.
-    static constexpr double certainty = 5;
-
     void slip(const alignment& to, complex ratio, double coefficient, std::size_t symbols)
     {
         std::uint64_t from = end_of_old();
         const std::uint64_t begin = mark ? std::max(*mark, written) : split_begin();
-        std::uint64_t until = to.mirrored == where.mirrored ? first_of_new(to, begin, done) : done;
+        std::uint64_t until = to.mirrored == where.mirrored
+                                  ? first_of_new(ref, fitted, to, track.coefficient(), begin, done)
+                                  : done;
         if (until < from) // both fit there: which of them held cannot be told
             std::swap(from, until);
 
@@ -336,7 +264,9 @@ struct aligner::impl {
     std::uint64_t end_of_old()
     {
         const std::uint64_t until = mark ? std::max(*mark, written) : done;
-        return onset < until ? last_of_old(std::min(split_begin(), until), until) : until;
+        if (onset >= until)
+            return until;
+        return last_of_old(ref, fitted, where, track.coefficient(), std::min(split_begin(), until), until);
     }
 
     void lose()
