@@ -48,8 +48,8 @@ class FirnLink(gr.top_block):
 
         slope = [
             halfplane.test_pattern(signal_set, pattern),
-            # The aligner holds symbols back, and filters and timing need some to start: sent on top.
-            blocks.head(gr.sizeof_short, symbols + halfplane.aligner.holdback() + 2 * PULSE_SYMBOLS),
+            # Filters and timing need some to start: sent on top.
+            blocks.head(gr.sizeof_short, symbols + 2 * PULSE_SYMBOLS),
             halfplane.point_mapper(signal_set),
             gr_filter.interp_fir_filter_ccf(SAMPLES_PER_SYMBOL, pulse),
             noise,

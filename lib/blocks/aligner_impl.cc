@@ -5,6 +5,8 @@
 #include "checks.h"
 #include "lock_pmt.h"
 
+#include <gnuradio/block_detail.h>
+#include <gnuradio/buffer_reader.h>
 #include <gnuradio/io_signature.h>
 
 #include <algorithm>
@@ -85,8 +87,41 @@ std::uint64_t aligner_impl::slips() const
 
 void aligner_impl::forecast(int, gr_vector_int& ninput_items_required)
 {
-    // Any input is worth taking: at first it fills the hold-back and nothing comes out.
-    ninput_items_required[0] = 1;
+    // Any input is worth taking: at first it fills the hold-back and nothing comes out. Once the input has
+    // ended, what is held back comes out without any.
+    ninput_items_required[0] = input_ended() ? 0 : 1;
+}
+
+bool aligner_impl::input_ended() const
+{
+    const auto input = detail()->input(0);
+    const gr::thread::scoped_lock guard(*input->mutex());
+    return input->done() && input->items_available() == 0;
+}
+
+/// What was held back when the input ended, as far as there is room.
+int aligner_impl::empty_holdback(int room, gr_complex* corrected, reference_t* reference)
+{
+    const std::uint64_t first_output = nitems_written(0);
+    if (!d_ended) {
+        d_ended = true;
+        const auto held = static_cast<std::size_t>(d_aligner.taken() - d_aligner.written());
+        d_rest.resize(held);
+        d_rest_reference.resize(held);
+        d_aligner.finish(d_rest.data(), d_rest_reference.data());
+        announce(first_output);
+    }
+    const std::size_t count = std::min(static_cast<std::size_t>(room), d_rest.size() - d_rest_written);
+    if (count == 0)
+        return WORK_DONE;
+    const auto begin = static_cast<std::ptrdiff_t>(d_rest_written),
+               end = begin + static_cast<std::ptrdiff_t>(count);
+    std::copy(d_rest.begin() + begin, d_rest.begin() + end, corrected);
+    std::copy(d_rest_reference.begin() + begin, d_rest_reference.begin() + end, reference);
+    d_rest_written += count;
+    for (unsigned port : {0u, 1u})
+        add_item_tag(port, first_output, pending_key(), pmt::from_uint64(d_rest.size() - d_rest_written));
+    return static_cast<int>(count);
 }
 
 /// Offsets below `end` before which samples are missing, ascending; other tags go on to output 0.
@@ -130,6 +165,8 @@ int aligner_impl::general_work(int noutput_items,
     const auto* samples = static_cast<const gr_complex*>(in[0]);
     auto* corrected = static_cast<gr_complex*>(out[0]);
     auto* reference = static_cast<reference_t*>(out[1]);
+    if (d_ended || (ninput_items[0] == 0 && input_ended()))
+        return empty_holdback(noutput_items, corrected, reference);
     const auto taken = static_cast<std::uint64_t>(std::min(noutput_items, ninput_items[0]));
     const std::uint64_t first = nitems_read(0), end = first + taken, first_output = nitems_written(0);
 

@@ -33,11 +33,18 @@ public:
 private:
     std::vector<std::uint64_t> overflows_before(std::uint64_t end);
     void announce(std::uint64_t first_output);
+    bool input_ended() const;
+    int empty_holdback(int room, gr_complex* corrected, ::halfplane::reference_t* reference);
 
     const ::halfplane::pattern d_pattern;
     ::halfplane::link::aligner d_aligner; ///< used by the block's own thread only
     rx_time d_time;
     bool d_overflow_message = false;
+    /// At the end of the input: what was held back, and how much of it has gone out.
+    std::vector<gr_complex> d_rest;
+    std::vector<::halfplane::reference_t> d_rest_reference;
+    std::size_t d_rest_written = 0;
+    bool d_ended = false;
     mutable std::mutex d_mutex; ///< guards d_status
     ::halfplane::link::lock_status d_status;
 };

@@ -60,7 +60,15 @@ def test_window_closes_and_the_last_one_is_counted():
     which = halfplane.load_set("psk:4")
     report, _, reference = run_link(which, 20.0, 12345, window=5000)
     assert report["total"]["in"] == 12345
-    assert len(reference) == 12345 - halfplane.aligner.holdback()
+    assert report["total"]["pending"] == 0
+    assert len(reference) == 12345
+
+
+@pytest.mark.parametrize("symbols", [1, 2500, 4096])
+def test_a_stream_shorter_than_the_holdback_is_accounted_for(symbols):
+    report, _, _ = run_link(halfplane.load_set("psk:4"), 20.0, symbols)
+    assert_account_adds_up(report, symbols)
+    assert (report["total"]["judged"] > 0) == (symbols > 2200)
 
 
 def test_the_receivers_own_decisions_are_counted():

@@ -16,10 +16,12 @@ namespace gr::halfplane {
  * In: one complex sample a symbol, at any gain and phase and with a small residual frequency. Out 0: the
  * samples, corrected from the past alone. Out 1 (int16): the index that was sent, or why there is none (−1
  * before lock, −2 slip, −3 signal lost, −4 overflow). Sample k of the input leaves as sample k of both
- * outputs, but only once `holdback` later ones have come in: gaps are judged afterwards.
+ * outputs, but only once `holdback` later ones have come in: gaps are judged afterwards. Where the input ends
+ * by itself (a file, a head), what is held back comes out too; a flowgraph that is stopped leaves it inside.
  *
  * Tags on both outputs: `lock` (dict: state, delay, rotation_deg, mirrored, inverted, frequency, slips) at
- * the symbol with which a change takes effect, `pending` (uint64, symbols held back) at the first. Tags of
+ * the symbol with which a change takes effect, `pending` (uint64, symbols held back) at the first
+ * and, while the hold-back empties at the end, with what is left. Tags of
  * the input go on to output 0 at their own sample.
  *
  * Samples lost by the radio: every `rx_time` tag after the first that does not fit the time gone by (all of
@@ -46,7 +48,7 @@ public:
                      std::uint64_t memory = 2000,
                      double symbol_rate = 0);
 
-    /// Symbols held back: output = max(0, input − holdback).
+    /// Symbols held back: output = max(0, input − holdback) until the input ends.
     static std::uint64_t holdback();
     /// `searching`, `held`, `doubtful` or `lost`.
     virtual std::string state() const = 0;

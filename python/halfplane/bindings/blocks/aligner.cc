@@ -16,7 +16,7 @@ void bind_aligner(py::module& m)
 
 In: one complex sample a symbol, any gain and phase. Out 0: the samples, corrected from the past alone. Out 1
 (short): the index that was sent, or -1 before lock, -2 slip, -3 signal lost, -4 overflow. Sample k comes out as
-sample k once aligner.holdback() later ones are in, so that gaps are judged afterwards.
+sample k once aligner.holdback() later ones are in, so that gaps are judged afterwards; where the input ends by itself, the rest comes out too.
 
 set, pattern: as for test_pattern. correction: 'running', 'held' (frozen after lock) or 'off' (only the set's own
 rotation or mirror is undone). memory: symbols over which 'running' averages, >= 16. symbol_rate: Hz, to judge
@@ -30,7 +30,9 @@ parameter and value.)doc")
              py::arg("correction") = "running",
              py::arg("memory") = std::uint64_t{2000},
              py::arg("symbol_rate") = 0.0)
-        .def_static("holdback", &aligner::holdback, "Symbols held back: output = max(0, input - holdback).")
+        .def_static("holdback",
+                    &aligner::holdback,
+                    "Symbols held back: output = max(0, input - holdback) until the input ends.")
         .def("state", &aligner::state, "'searching', 'held', 'doubtful' or 'lost'.")
         .def("slips", &aligner::slips, "Slips seen so far.");
 }
