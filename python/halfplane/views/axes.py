@@ -1,0 +1,67 @@
+# SPDX-License-Identifier: GPL-3.0-or-later
+"""Scales from values to places in a drawing, with their ticks."""
+
+from __future__ import annotations
+
+import math
+
+from . import lettering, words
+from .drawing import Drawing, Text
+
+
+class LogAxis:
+    """
+    A horizontal or vertical logarithmic scale over positive values, with some air at both ends.
+
+    values: what must be on it. low_end, high_end: where it starts and ends in the drawing (low_end may be the greater).
+    least_decades: it never shows less than so much, so that noise does not fill the view.
+    """
+
+    def __init__(self, values, low_end: float, high_end: float, least_decades: float = 0.5, air: float = 0.06):
+        low, high = math.log10(min(values)), math.log10(max(values))
+        missing = max(0.0, least_decades - (high - low)) / 2
+        low, high = low - missing, high + missing
+        margin = air * (high - low)
+        self.low, self.high = low - margin, high + margin
+        self.low_end, self.high_end = low_end, high_end
+
+    def __call__(self, value: float) -> float:
+        return self.at_log(math.log10(value))
+
+    def at_log(self, log10: float) -> float:
+        return self.low_end + (log10 - self.low) / (self.high - self.low) * (self.high_end - self.low_end)
+
+    def ticks(self) -> list[tuple[float, str]]:
+        """(value, label), ascending: decades, and 2 and 5, or every digit, between them where few decades show."""
+        span = self.high - self.low
+        digits = (1,) if span > 3 else (1, 2, 5) if span > 1 else range(1, 10)
+        skip = max(1, math.ceil(span / 12))
+        found = []
+        for decade in range(math.floor(self.low), math.ceil(self.high) + 1):
+            if span > 3 and decade % skip:
+                continue
+            for digit in digits:
+                if self.low <= decade + math.log10(digit) <= self.high:
+                    value = digit * 10.0**decade
+                    found.append((value, words.power_of_ten(decade) if digit == 1 and not -3 < decade < 0 else words.rate(value, 1)))
+        return found
+
+    def draw_labels(self, out: Drawing, y: float, size: float = 11.0) -> None:
+        """Labels of the ticks along a horizontal axis; those without room are left out, decades last."""
+        taken: list[tuple[float, float]] = []
+        ticks = sorted(self.ticks(), key=lambda tick: (not _is_decade(tick[0]), _digit(tick[0]) not in (2, 5), tick[0]))
+        for value, label in ticks:
+            room = lettering.width(label, size)
+            left = self(value) - room / 2
+            if left < 0 or left + room > out.width or any(left < b + 8 and a - 8 < left + room for a, b in taken):
+                continue
+            taken.append((left, left + room))
+            out.add(Text(self(value), y, label, "quiet", size, "middle"))
+
+
+def _digit(value: float) -> int:
+    return round(value / 10.0 ** math.floor(math.log10(value) + 1e-9))
+
+
+def _is_decade(value: float) -> bool:
+    return _digit(value) == 1

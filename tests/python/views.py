@@ -1,0 +1,176 @@
+# SPDX-License-Identifier: GPL-3.0-or-later
+"""What every view owes: numbers equal the report's, the same bytes twice, sound XML in every theme, labels side by side."""
+
+import itertools
+import math
+import random
+import re
+import xml.etree.ElementTree as xml
+
+import pytest
+import sample_reports
+from gnuradio.halfplane import views
+from gnuradio.halfplane.views import drawing, lettering, svg, themes, words
+
+REPORTS = {
+    "high": sample_reports.step(8.0), "low": sample_reports.step(18.0), "silent": sample_reports.silent(),
+    "searching": sample_reports.searching(), "empty": {},
+}  # fmt: skip
+SIZES = [(360.0, 260.0), (720.0, 300.0), (1200.0, 420.0)]
+RAISED = str.maketrans("⁻⁰¹²³⁴⁵⁶⁷⁸⁹", "-0123456789")
+
+
+def number(text):
+    """The value of a rate as words.rate writes it."""
+    if "·10" in text:
+        mantissa, exponent = text.split("·10")
+        return float(mantissa) * 10.0 ** int(exponent.translate(RAISED))
+    return float(text)
+
+
+def overlaps(shown):
+    """Pairs of texts that lie on one another."""
+    return [
+        (a[4], b[4])
+        for a, b in itertools.combinations(lettering.boxes(shown), 2)
+        if a[0] < b[2] and b[0] < a[2] and a[1] < b[3] and b[1] < a[3]
+    ]
+
+
+def outside(shown):
+    return [box[4] for box in lettering.boxes(shown) if box[0] < 0 or box[1] < 0 or box[2] > shown.width or box[3] > shown.height]
+
+
+def test_rates_read_back():
+    random.seed(1)
+    for _ in range(2000):
+        value = 10 ** random.uniform(-300, 0)
+        assert math.isclose(number(words.rate(value)), value, rel_tol=5.1e-3), value
+    assert words.rate(0.9996) == "1.000" and words.rate(1.23456e-4) == "1.23·10⁻⁴" and words.rate(0) == "0"
+
+
+@pytest.mark.parametrize("theme", ["light", "dark", "page"])
+@pytest.mark.parametrize("name", views.VIEWS)
+@pytest.mark.parametrize("report", REPORTS.values(), ids=REPORTS)
+def test_svg_is_sound(name, report, theme):
+    shown = views.VIEWS[name](report, None)
+    text = svg.render(shown, theme)
+    tree = xml.fromstring(text)
+    names = {"s": "http://www.w3.org/2000/svg"}
+    assert tree.get("role") == "img"
+    assert tree.find("s:title", names).text and tree.find("s:desc", names).text
+    for reference in tree.get("aria-labelledby").split():
+        assert tree.find(f".//*[@id='{reference}']") is not None
+    assert "style=" not in text and "<script" not in text and "http" not in text.replace("http://www.w3.org/2000/svg", "")
+    assert svg.render(views.VIEWS[name](report, None), theme) == text
+    if theme == "page":
+        assert not re.search(r"#[0-9a-f]{6}", text)
+
+
+def test_every_role_has_a_colour():
+    for theme in themes.THEMES.values():
+        assert set(theme) == set(drawing.ROLES)
+    sheet = themes.stylesheet()
+    assert all(sheet.count(themes.variable(role) + ":") == 4 for role in drawing.ROLES)
+
+
+def luminance(colour):
+    """Relative luminance of sRGB, WCAG 2.1."""
+    channels = [int(colour[k : k + 2], 16) / 255 for k in (1, 3, 5)]
+    linear = [c / 12.92 if c <= 0.03928 else ((c + 0.055) / 1.055) ** 2.4 for c in channels]
+    return 0.2126 * linear[0] + 0.7152 * linear[1] + 0.0722 * linear[2]
+
+
+def contrast(one, other):
+    high, low = sorted((luminance(one), luminance(other)), reverse=True)
+    return (high + 0.05) / (low + 0.05)
+
+
+@pytest.mark.parametrize("theme", themes.THEMES)
+def test_text_stands_out(theme):
+    """WCAG 2.1, 1.4.3: 4.5 for text; 1.4.11: 3 for what is drawn."""
+    colours = themes.THEMES[theme]
+    for role in ("ink", "quiet", "measured", "exact", "facing", "nearest", "target", "more", "fewer", "good", "bad", "open"):
+        assert contrast(colours[role], colours["ground"]) >= 4.5, role
+    for role in ("union", "slip", "overflow", "lost", "loss", "rest"):
+        assert contrast(colours[role], colours["ground"]) >= 3, role
+
+
+def test_arrow_ends_at_its_tip():
+    outline = drawing.Arrow(0, 0, 30, 40, width=4).outline()
+    assert any(math.isclose(x, 30) and math.isclose(y, 40) for x, y in outline)
+    assert drawing.Arrow(1, 1, 1, 1).outline() == ()
+
+
+def test_a_coordinate_that_is_no_number_is_refused():
+    with pytest.raises(ValueError, match="nan"):
+        svg.render(drawing.Drawing("x", 10, 10, items=[drawing.Mark(math.nan, 1)]))
+
+
+def test_spread_moves_least():
+    """Against the best of a fine search for three labels; far labels stay where they are."""
+    assert lettering.spread([10, 200, 400], [20, 20, 20], 0, 500) == [10, 200, 400]
+    wishes, gap = [50.0, 52.0, 58.0], 8.0
+    placed = lettering.spread(wishes, [20, 20, 20], 0, 500, gap)
+    cost = sum((a - b) ** 2 for a, b in zip(placed, wishes))
+    best = min(
+        sum((a - b) ** 2 for a, b in zip((x, x + 28 + d, x + 56 + d + e), wishes))
+        for x in [k / 10 for k in range(100, 600)] for d in (0, 1, 2) for e in (0, 1, 2)
+    )  # fmt: skip
+    assert cost <= best + 1e-9
+    packed = lettering.spread([490, 492, 499], [20, 20, 20], 0, 500, gap)
+    assert packed[2] + 10 <= 500 and all(b - a >= 28 - 1e-9 for a, b in zip(packed, packed[1:]))
+
+
+@pytest.mark.parametrize("size", SIZES)
+@pytest.mark.parametrize("report", REPORTS.values(), ids=REPORTS)
+def test_ladder_labels_stand_apart(report, size):
+    shown = views.ladder(report, None, size)
+    assert overlaps(shown) == [] and outside(shown) == []
+
+
+def test_ladder_labels_stand_apart_wherever_the_rungs_are():
+    random.seed(2)
+    for _ in range(300):
+        report = sample_reports.step(random.uniform(0, 20))
+        spread = 10 ** random.uniform(-4, 0.5)
+        for figures in report["total"]["predicted"].values():
+            for kind in figures:
+                figures[kind] *= math.exp(random.uniform(-spread, spread))
+        report["verdict"] = {"target": {"ser": report["total"]["ser"] * math.exp(random.uniform(-spread, spread))}}
+        shown = views.ladder(report, None, random.choice(SIZES))
+        assert overlaps(shown) == [] and outside(shown) == []
+
+
+def test_ladder_shows_the_reports_numbers():
+    report = sample_reports.step(12.0)
+    total = report["total"]
+    texts = views.ladder(report, None, (1200, 420)).texts()
+    for kind in ("ser", "ber"):
+        assert words.rate(total[kind]) in texts
+        assert f"95 %: {words.rate(total[kind + '_low'])} to {words.rate(total[kind + '_high'])}" in texts
+        for figures in total["predicted"].values():
+            assert words.rate(figures[kind]) in texts
+
+
+def test_ladder_places_are_logarithms():
+    """Every rung and the estimate stand where log10 of their rate says, to a hundredth."""
+    report = sample_reports.step(12.0)
+    total = report["total"]
+    shown = views.ladder(report, None)
+    lines = [item for item in shown.items if isinstance(item, drawing.Line) and item.points[0][0] == item.points[1][0]]
+    at = {item.role: item.points[0][0] for item in lines if item.role in ("measured", *words.RUNGS)}  # the last row: BER
+    values = {"measured": total["ber"], **{name: total["predicted"][name]["ber"] for name in words.RUNGS}}
+    scale = (at["union"] - at["nearest"]) / math.log10(values["union"] / values["nearest"])
+    for role, value in values.items():
+        assert math.isclose(at[role] - at["nearest"], scale * math.log10(value / values["nearest"]), abs_tol=0.01), role
+
+
+def test_ladder_says_on_which_side():
+    report = sample_reports.step(14.0)
+    total = report["total"]
+    for ratio, sign in ((1.5, "▲"), (1.0, "="), (0.5, "▼")):
+        exact = total["predicted"]["exact"]["ser"]
+        total.update(ser=ratio * exact, ser_low=0.8 * ratio * exact, ser_high=1.2 * ratio * exact)
+        said = [text for text in views.ladder(report, None).texts() if text[:1] in "▲=▼"]
+        assert said[0].startswith(sign), (ratio, said)
