@@ -14,7 +14,7 @@ LIGHT = {
     "exact": "#16425b", "facing": "#a9620f", "union": "#7d8a95", "nearest": "#317364", "target": "#5a3e8e",
     "more": "#c1501a", "fewer": "#2f74b5", "even": "#eef1f3",
     "gap": "#d7dde2", "slip": "#8e4fa3", "overflow": "#b0720c", "lost": "#56636e", "before": "#a6b0b9",
-    "loss": "#3e7399", "rest": "#8b97a1",
+    "loss": "#3a6f96", "rest": "#82909b",
     "good": "#23705b", "bad": "#a4243b", "open": "#8a5a00",
 }  # fmt: skip
 
