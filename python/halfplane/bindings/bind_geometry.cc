@@ -3,6 +3,7 @@
 #include "topics.h"
 
 #include "halfplane/geometry.h"
+#include "halfplane/outlines.h"
 
 #include <pybind11/complex.h>
 #include <pybind11/stl.h>
@@ -103,6 +104,29 @@ void bind_geometry(py::module_& m)
         py::arg("tolerance") = default_tolerance,
         py::arg("most") = 1000,
         "[(distance, ordered pairs)], ascending, at most `most` of them.");
+    m.def(
+        "outlines",
+        [](const signal_set& set, double left, double right, double bottom, double top, double n0) {
+            std::vector<std::vector<complex>> all;
+            {
+                py::gil_scoped_release free;
+                all = outlines(set, n0, {left, right, bottom, top});
+            }
+            py::list out;
+            for (const auto& each : all)
+                out.append(array_of(each));
+            return out;
+        },
+        py::arg("set"),
+        py::arg("left"),
+        py::arg("right"),
+        py::arg("bottom"),
+        py::arg("top"),
+        py::arg("n0") = 0.0,
+        "Decision cells as closed polygons within a frame: by index an array of vertices, counter-clockwise, "
+        "empty where\nthe cell has no part there. n0: of MAP decisions under the set's priors, in the square "
+        "of "
+        "the points' unit; 0: the\nnearest point decides.");
 }
 
 } // namespace halfplane::python
