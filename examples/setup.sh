@@ -53,7 +53,8 @@ pick_python() {
     fail "no python3 here can import gnuradio.gr and numpy"
 }
 
-# build_tree DIRECTORY OPTION…: configures the sources into DIRECTORY with these options and builds all.
+# build_tree DIRECTORY OPTION…: configures the sources into DIRECTORY with these options and builds all, or the targets
+# named in the array `targets`.
 build_tree() {
     local directory=$1
     shift
@@ -63,5 +64,5 @@ build_tree() {
         cat "$directory/configure.log" >&2
         fail "configuring failed"
     }
-    cmake --build "$directory" -j2
+    cmake --build "$directory" -j2 ${targets:+--target "${targets[@]}"}
 }
