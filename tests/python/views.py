@@ -7,11 +7,14 @@ import random
 import re
 import xml.etree.ElementTree as xml
 
+import numpy as np
 import pytest
 import sample_reports
-from gnuradio.halfplane import views
-from gnuradio.halfplane.views import drawing, lettering, svg, themes, words
+from command import FIRN as FIRN_FILE
+from gnuradio.halfplane import load_set, predictor, signal_set, views
+from gnuradio.halfplane.views import basis, drawing, lettering, svg, themes, words
 
+FIRN = load_set(FIRN_FILE)
 REPORTS = {
     "high": sample_reports.step(8.0), "low": sample_reports.step(18.0), "silent": sample_reports.silent(),
     "searching": sample_reports.searching(), "empty": {},
@@ -174,3 +177,131 @@ def test_ladder_says_on_which_side():
         total.update(ser=ratio * exact, ser_low=0.8 * ratio * exact, ser_high=1.2 * ratio * exact)
         said = [text for text in views.ladder(report, None).texts() if text[:1] in "▲=▼"]
         assert said[0].startswith(sign), (ratio, said)
+
+
+def settings_of(signal_set, detector="ml"):
+    """As watch::settings() writes them."""
+    found = {
+        "set": signal_set.name, "points": [[p.real, p.imag] for p in signal_set.points], "labels": signal_set.label_strings,
+        "pattern": "draw:2026", "law": "awgn", "detector": detector, "decisions": "own", "confidence": 0.95, "window": 10000,
+    }  # fmt: skip
+    if not signal_set.uniform:
+        found["priors"] = list(signal_set.priors)
+    return found
+
+
+def counted(signal_set, es_n0_db, sent, factor=lambda i, j: 1.0, seed=1, detector="automatic"):
+    """A report whose transitions are drawn from Poisson counts, `factor` times their expectation."""
+    exact = predictor(signal_set, "awgn", detector)
+    chances, draw = exact.transitions(es_n0_db), np.random.default_rng(seed)
+    rows = []
+    for i, j in itertools.permutations(range(signal_set.size), 2):
+        expected = sent[i] * chances[i, j]
+        if number := int(draw.poisson(expected * factor(i, j))):
+            rows.append([i, j, number, expected])
+    symbols = int(sum(sent))
+    total = {
+        "symbols": symbols, "judged": symbols, "symbol_errors": sum(row[2] for row in rows), "es_n0_db": es_n0_db, "transitions": rows,
+        "predicted": {"exact": {"ser": float(sum(n * s for n, s in zip(sent, exact.rates(es_n0_db)["exact"]["ser_by_point"])) / symbols)}},
+    }  # fmt: skip
+    return {"total": total, "lock": {"state": "held"}}
+
+
+def test_expected_errors_of_each_point_are_those_of_the_symbols_sent():
+    """Points sent unequally often: the expectation follows n_i, which the report does not hold by itself."""
+    sent = [1000 * (k + 1) for k in range(12)]
+    link = basis.of(settings_of(FIRN))
+    numbers, expected = link.errors_by_point(counted(FIRN, 10.0, sent)["total"])
+    by_point = predictor(FIRN).rates(10.0)["exact"]["ser_by_point"]
+    np.testing.assert_allclose(expected, [n * s for n, s in zip(sent, by_point)], rtol=1e-9)
+    assert all(abs(basis.deviation(k, x)) < 4 for k, x in zip(numbers, expected))
+
+
+def test_deviation_is_standard_normal_for_a_poisson_count():
+    draw = np.random.default_rng(3)
+    for expected in (5.0, 40.0, 3000.0):
+        values = [basis.deviation(k, expected) for k in draw.poisson(expected, 4000)]
+        # mean 0 ± 0.12 for the smallest (bias 1/(8√x)), deviation 1: 4 standard errors of 4,000 draws are 0.06 and 0.05
+        assert abs(np.mean(values)) < 0.13 and abs(np.std(values) - 1) < 0.08, expected
+
+
+def tiles(shown):
+    return [item for item in shown.items if isinstance(item, drawing.Polygon)]
+
+
+def test_map_of_a_link_as_expected_is_plain():
+    plain = 0
+    for seed in range(30):
+        shown = views.decision_map(counted(FIRN, 10.0, [20000] * 12, seed=seed), settings_of(FIRN))
+        coloured = [item for item in shown.items if getattr(item, "note", "") and item.role in ("more", "fewer")]
+        plain += not coloured
+    # Each has a chance of 1 in 100 to show any colour: more than 3 of 30 have one below 1 in 3,000.
+    assert plain >= 27
+
+
+def test_map_colours_and_signs_what_departs():
+    names = FIRN.label_strings
+    report = counted(FIRN, 10.0, [20000] * 12, lambda i, j: 2.0 if i == 3 else 0.4 if i == 7 else 1.0)
+    shown = views.decision_map(report, settings_of(FIRN))
+    roles = {tile.note.split(":")[0]: tile.role for tile in tiles(shown)}
+    assert {name for name, role in roles.items() if role == "more"} == {names[3]}
+    assert {name for name, role in roles.items() if role == "fewer"} == {names[7]}
+    marks = {item.note: item.shape for item in shown.items if isinstance(item, drawing.Mark) and item.note}
+    assert marks[names[3]] == "plus" and marks[names[7]] == "minus" and marks[names[0]] == "circle"
+    assert names[3] in shown.description and names[7] in shown.description and names[0] not in shown.description
+    numbers = [row for row in report["total"]["transitions"] if row[0] == 3]
+    tile = next(tile for tile in tiles(shown) if tile.note.startswith(names[3]))
+    assert f" {words.count(sum(row[2] for row in numbers))} errors" in tile.note
+
+
+def test_map_arrows_are_transitions_between_facing_cells():
+    report = counted(FIRN, 10.0, [20000] * 12, lambda i, j: 3.0 if (i, j) == (0, 1) else 1.0)
+    facing = predictor(FIRN).facing(10.0)
+    shown = views.decision_map(report, settings_of(FIRN))
+    arrows = {item.note.split(":")[0]: item for item in shown.items if isinstance(item, drawing.Arrow)}
+    names = FIRN.label_strings
+    expected = {f"{names[i]} decided as {names[j]}" for i, j, *_ in report["total"]["transitions"] if j in facing[i]}
+    assert set(arrows) == expected and 1 in facing[0]
+    odd, even = arrows[f"{names[0]} decided as {names[1]}"], arrows[f"{names[1]} decided as {names[0]}"]
+    assert odd.role == "more" and even.role == "quiet" and 2.4 < odd.width / even.width < 3.6
+    # From sent to decided: along the direction of the points, with the vertical axis turned over.
+    way = FIRN.points[1] - FIRN.points[0]
+    assert (odd.x2 - odd.x1) * way.real - (odd.y2 - odd.y1) * way.imag > 0
+
+
+def test_map_tiles_are_the_cells():
+    """Each tile holds its own point, and the MAP border moves with the gauged N0."""
+    pair = signal_set([1.0, -1.0], priors=[0.9, 0.1], name="pair")
+    at = {}
+    for es_n0_db in (0.0, 10.0):
+        shown = views.decision_map(counted(pair, es_n0_db, [9000, 1000]), settings_of(pair, "map"))
+        at[es_n0_db] = min(x for x, _ in tiles(shown)[0].points)
+    scale = tiles(shown)[0].points
+    unit = (max(x for x, _ in scale) - at[10.0]) / (1 + 1.2 - 0.1 * math.log(0.1 / 0.9) / 4)
+    # Threshold N0 ln(q/p)/4 with Es = 1: at 0 dB it lies 0.9 · ln 9 / 4 farther left than at 10 dB.
+    assert math.isclose(at[10.0] - at[0.0], 0.9 * math.log(9) / 4 * unit, abs_tol=0.05)
+
+
+@pytest.mark.parametrize("name", ["psk:2", "qam:256", "qam:4096"])
+def test_map_of_small_and_large_sets(name):
+    large = load_set(name)
+    shown = views.decision_map({"total": {}}, settings_of(large), labels=True)
+    assert len(tiles(shown)) == large.size
+    assert outside(shown) == []
+    xml.fromstring(svg.render(shown))
+    if large.size > 256:
+        assert not set(large.label_strings) & set(shown.texts())
+        assert "not counted cell by cell" in " ".join(shown.texts())
+    else:
+        assert set(large.label_strings) <= set(shown.texts()) or name == "qam:256"
+
+
+def test_map_shows_samples_and_labels_on_demand():
+    report, known = counted(FIRN, 10.0, [2000] * 12), settings_of(FIRN)
+    plain = views.decision_map(report, known)
+    assert not set(FIRN.label_strings) & set(plain.texts())
+    samples = [0.1 + 0.2j, 1e6 + 0j, *[0.5j] * 3000]
+    full = views.decision_map(report, known, labels=True, cloud=samples)
+    assert set(FIRN.label_strings) <= set(full.texts())
+    dots = next(item for item in full.items if isinstance(item, drawing.Cloud))
+    assert len(dots.points) == 2000

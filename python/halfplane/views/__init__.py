@@ -6,10 +6,11 @@ A view is a pure function of report(s), settings and size that gives a drawing (
 instead of colours. svg.render makes SVG text of it, in the themes of themes.py.
 """
 
+from .decision_map import decision_map
 from .drawing import Drawing
 from .ladder import ladder
 from .svg import render
 
-VIEWS = {"ladder": ladder}
+VIEWS = {"ladder": ladder, "decision_map": decision_map}
 
-__all__ = ["Drawing", "VIEWS", "ladder", "render"]
+__all__ = ["Drawing", "VIEWS", "decision_map", "ladder", "render"]

@@ -65,3 +65,32 @@ def _digit(value: float) -> int:
 
 def _is_decade(value: float) -> bool:
     return _digit(value) == 1
+
+
+class LinearAxis:
+    """
+    A linear scale from `low` … `high` in values to `low_end` … `high_end` in the drawing; most: about how many ticks at most.
+    """
+
+    def __init__(self, low: float, high: float, low_end: float, high_end: float, most: int = 6):
+        if not high > low:
+            low, high = low - 0.5, high + 0.5
+        self.low, self.high, self.low_end, self.high_end = low, high, low_end, high_end
+        rough = (high - low) / max(1, most)
+        power = 10.0 ** math.floor(math.log10(rough))
+        self.step = next(m * power for m in (1, 2, 5, 10) if m * power >= rough * (1 - 1e-9))
+
+    def __call__(self, value: float) -> float:
+        return self.low_end + (value - self.low) / (self.high - self.low) * (self.high_end - self.low_end)
+
+    def ticks(self) -> list[tuple[float, str]]:
+        """(value, label), ascending, at multiples of 1, 2 or 5 times a power of ten."""
+        digits = max(0, -math.floor(math.log10(self.step) + 1e-9))
+        first = math.ceil(self.low / self.step - 1e-9)
+        last = math.floor(self.high / self.step + 1e-9)
+        return [(k * self.step, self._label(k * self.step, digits)) for k in range(first, last + 1)]
+
+    def _label(self, value: float, digits: int) -> str:
+        if digits > 6 or abs(value) >= 1e7:
+            return f"{value:.3g}".replace("-", "−")
+        return f"{value + 0.0:.{digits}f}".replace("-", "−")

@@ -4,7 +4,6 @@
 from __future__ import annotations
 
 import hashlib
-import math
 from collections.abc import Callable
 from html import escape
 
@@ -46,9 +45,11 @@ def render(drawing: Drawing, theme: str = "light") -> str:
 
 def _n(value: float) -> str:
     """A coordinate, to a hundredth; a drawing never holds one that is not finite."""
-    if not math.isfinite(value):
+    text = "%.2f" % value
+    if text[-1] in "nf":
         raise ValueError(f"a coordinate of a drawing is {value}")
-    return f"{round(value, 2) + 0.0:.2f}".rstrip("0").rstrip(".")
+    text = text.rstrip("0").rstrip(".")
+    return "0" if text == "-0" else text
 
 
 def _points(points) -> str:
