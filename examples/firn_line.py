@@ -11,7 +11,7 @@ from gnuradio import halfplane
 from gnuradio.halfplane import documents, live
 from gnuradio.halfplane.cli import arguments, run_command, shown
 
-from firn_link import FirnLink
+from flowgraphs.a_simulated_link import FirnLink
 
 HERE = Path(__file__).resolve().parent
 PATTERN = "draw:2026"

@@ -6,6 +6,7 @@ The core (sets, rates, intervals, patterns) is here at once. The GNU Radio block
 is first asked for, so that a script or command that only computes starts fast and runs without GNU Radio.
 """
 
+from .captions import set_caption  # noqa: F401
 from .core_python import *  # noqa: F401,F403
 
 # Names that live in blocks_python, one a block.

@@ -88,6 +88,6 @@ def fractional_delay(fraction, half=20):
 if __name__ == "__main__":
     from pathlib import Path
 
-    link = FirnLink(halfplane.load_set(str(Path(__file__).parent / "sets" / "firn-12.json")), "draw:2026", 14, 200_000)
+    link = FirnLink(halfplane.load_set(str(Path(__file__).parents[1] / "sets" / "firn-12.json")), "draw:2026", 14, 200_000)
     link.run()
     print(link.watch.report())

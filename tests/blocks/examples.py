@@ -1,0 +1,130 @@
+# SPDX-License-Identifier: GPL-3.0-or-later
+"""
+The example flowgraphs as a user runs them: each .grc compiled by grcc and run, each .py run; the last line they print is
+a report, and it says what it must. Radios are replaced by a channel: a gain, a phase, noise, and an end.
+"""
+
+import json
+import os
+import pathlib
+import subprocess
+import sys
+
+import numpy as np
+import pytest
+import yaml
+from gnuradio import blocks, gr, halfplane
+from gnuradio.filter import firdes
+
+SOURCE = pathlib.Path(os.environ["HALFPLANE_SOURCE_DIR"])
+FLOWGRAPHS = SOURCE / "examples" / "flowgraphs"
+SECONDS = 120  # the longest takes a few
+sys.path.insert(0, str(FLOWGRAPHS))
+
+
+def last_report(command, folder):
+    done = subprocess.run([str(part) for part in command], cwd=folder, text=True, timeout=SECONDS, input="",
+                          stdout=subprocess.PIPE, stderr=subprocess.PIPE)
+    assert done.returncode == 0, done.stderr
+    return json.loads(done.stdout.strip().splitlines()[-1])
+
+
+def run_grc(path, folder):
+    settings = {**os.environ, "GRC_BLOCKS_PATH": str(SOURCE / "grc"), "HOME": str(folder)}
+    done = subprocess.run(["grcc", "-o", str(folder), str(path)], text=True, env=settings,
+                          stdout=subprocess.PIPE, stderr=subprocess.STDOUT)
+    assert done.returncode == 0, done.stdout
+    return last_report([sys.executable, folder / (path.stem + ".py")], folder)
+
+
+def run_py(path, folder):
+    return last_report([sys.executable, path], folder)
+
+
+def simulated_link(report):
+    total = report["total"]
+    assert total["judged"] > 0.85 * 100_000 and total["slips"] == 0
+    # The receiver costs something, a timing loop that is not wide not much.
+    assert report["shortfall"]["input"]["db_low"] < 0.4 and report["shortfall"]["input"]["db_high"] > 0
+    assert total["es_n0_db"] > report["input"]["es_n0_db"] - 1
+
+
+def own_set(report):
+    total = report["total"]
+    assert report["set"] == "firn-9-quiet" and report["detector"] == "map"
+    assert total["judged"] > 195_000 and total["pending"] == 0
+    exact = halfplane.predictor(halfplane.load_set(str(SOURCE / "examples" / "sets" / "firn-9-quiet.json"))).ser(10.0)
+    # Four standard deviations either way, and what a correction over 2,000 symbols costs: 0.01 dB, 1 % of the rate here.
+    assert abs(total["ser"] - exact) < 4 * np.sqrt(exact / total["judged"]) + 0.02 * exact
+    # Nearest points would err half as much again: at this Es/N0 priors matter.
+    nearest = halfplane.predictor(halfplane.load_set(str(SOURCE / "examples" / "sets" / "firn-9-quiet.json")), detector="ml").ser(10.0)
+    assert nearest > total["ser_high"]
+
+
+TASKS = {"a_simulated_link": simulated_link, "b_own_set": own_set}
+RADIOS = ["f_over_the_air_uhd", "g_over_the_air_soapy"]
+
+
+def test_every_flowgraph_stands_twice_and_is_tested():
+    names = {path.stem for path in FLOWGRAPHS.glob("*.grc")}
+    assert names == {path.stem for path in FLOWGRAPHS.glob("*.py")} == set(TASKS) | set(RADIOS)
+
+
+@pytest.mark.parametrize("name", TASKS)
+@pytest.mark.parametrize("run, suffix", [(run_grc, ".grc"), (run_py, ".py")], ids=["grc", "py"])
+def test_says_what_it_must(name, run, suffix, tmp_path):
+    TASKS[name](run(FLOWGRAPHS / (name + suffix), tmp_path))
+
+
+def over_the_air(report):
+    total = report["total"]
+    assert total["judged"] > 0.8 * 100_000 and total["slips"] == 0
+    assert report["lock"]["state"] == "held"
+    assert 12 < total["es_n0_db"] < 16.5  # 16 dB at the input, less what the timing loop leaves
+
+
+@pytest.mark.parametrize("name", RADIOS)
+def test_over_the_air_with_a_channel_in_place_of_the_radio(name, tmp_path):
+    """The same flowgraph, its two radio blocks replaced in the .grc, and `permitted` set as a user would set it."""
+    flow = yaml.safe_load((FLOWGRAPHS / (name + ".grc")).read_text())
+    blocks_of = {block["name"]: block for block in flow["blocks"]}
+    assert blocks_of["permitted"]["parameters"]["value"] == "False"
+    assert "licensed" in blocks_of["caution"]["parameters"]["note"]
+    blocks_of["permitted"]["parameters"]["value"] = "True"
+    flow["options"]["parameters"]["run_options"] = "run"
+    blocks_of["radio_out"].update(id="blocks_head", parameters={"num_items": "100000 * sps", "type": "complex"})
+    blocks_of["radio_in"].update(id="blocks_multiply_const_vxx",
+                                 parameters={"const": "0.2 * (0.6 + 0.8j)", "type": "complex", "vlen": "1"})
+    # The back-off scales the points: noise for the scaled set, 16 dB.
+    flow["blocks"].append({**blocks_of["radio_in"], "name": "air", "id": "halfplane_noise_at", "parameters": {
+        "set": "halfplane.signal_set([0.1 * s for s in firn.points], firn.labels)", "es_n0_db": "16", "pulse": "pulse", "seed": "1"}})
+    flow["connections"] += [["radio_out", "0", "air", "0"], ["air", "0", "radio_in", "0"]]
+    changed = tmp_path / (name + ".grc")
+    changed.write_text(yaml.safe_dump(flow))
+    over_the_air(run_grc(changed, tmp_path))
+
+
+@pytest.mark.parametrize("permitted", [True, False])
+def test_nothing_is_sent_unless_permitted(permitted):
+    from f_over_the_air_uhd import BACK_OFF, AirLink
+
+    which = halfplane.load_set("apsk:4+8:2.3")
+    symbols = 100_000 if permitted else 2_000
+    head = blocks.head(gr.sizeof_gr_complex, 4 * symbols)
+    sent = blocks.vector_sink_c()
+    scaled = halfplane.signal_set([BACK_OFF / np.max(np.abs(which.points)) * s for s in which.points], which.labels)
+    pulse = firdes.root_raised_cosine(1.0, 4, 1.0, 0.35, 89)
+    noise = halfplane.noise_at(scaled, 16.0, pulse, 1)
+    link = AirLink(which, "draw:2026", head, noise, 250e3, permitted)
+    link.connect(head, noise)
+    link.connect(head, sent)
+    link.run()
+    assert np.any(np.array(sent.data())) == permitted
+    if permitted:
+        over_the_air(json.loads(link.watch.report()))
+
+
+@pytest.mark.parametrize("name", RADIOS)
+def test_help_carries_the_question_of_permission(name):
+    done = subprocess.run([sys.executable, FLOWGRAPHS / (name + ".py"), "--help"], text=True, timeout=SECONDS, stdout=subprocess.PIPE)
+    assert done.returncode == 0 and "--permitted" in done.stdout and "licence" in done.stdout
