@@ -60,3 +60,29 @@ def searching():
         "input": {"es_n0_db": 3.0, "source": "declared"},
         "lock": {"state": "searching"},
     }  # fmt: skip
+
+
+def full():
+    """A step with everything that a report may say."""
+    report = step(12.0)
+    total = report["total"]
+    total["excluded"].update(slip=500, signal_lost=1000, overflow=20_000)
+    total["nonfinite"] = 3
+    total["in"] += 21_503
+    total["slips"] = 1
+    report.update(
+        losses=[
+            {"cause": "echo", "power_db": -28.0, "cost_db": 0.08}, {"cause": "phase_noise", "power_db": -31.0, "cost_db": 0.06},
+            {"cause": "iq_imbalance", "power_db": -40.0, "cost_db": 0.04},
+        ],
+        premises=[
+            {"name": "white", "p": 1e-9, "effect_db": 0.12, "state": "fails"},
+            {"name": "circular", "p": 0.3, "effect_db": 0.0, "state": "holds"},
+            {"name": "gaussian", "state": "too_few"},
+        ],
+        verdict={
+            "target": {"ser": 1e-3}, "state": "undecided", "log_wealth_pass": 1.2, "log_wealth_fail": -3.0, "symbols_to_go": 1_234_567,
+        },
+        seconds={"errored": 12, "severely_errored": 1, "unavailable": 0, "available": 400},
+    )  # fmt: skip
+    return report

@@ -5,6 +5,7 @@ import itertools
 import math
 import random
 import re
+import tracemalloc
 import xml.etree.ElementTree as xml
 
 import numpy as np
@@ -12,12 +13,24 @@ import pytest
 import sample_reports
 from command import FIRN as FIRN_FILE
 from gnuradio.halfplane import load_set, predictor, signal_set, views
-from gnuradio.halfplane.views import basis, drawing, lettering, svg, themes, words
+from gnuradio.halfplane.views import axes, basis, drawing, lettering, svg, themes, words
 
 FIRN = load_set(FIRN_FILE)
+def settings_of(signal_set, detector="ml"):
+    """As watch::settings() writes them."""
+    found = {
+        "set": signal_set.name, "points": [[p.real, p.imag] for p in signal_set.points], "labels": signal_set.label_strings,
+        "pattern": "draw:2026", "law": "awgn", "detector": detector, "decisions": "own", "confidence": 0.95, "window": 10000,
+    }  # fmt: skip
+    if not signal_set.uniform:
+        found["priors"] = list(signal_set.priors)
+    return found
+
+
+SETTINGS = settings_of(FIRN)
 REPORTS = {
     "high": sample_reports.step(8.0), "low": sample_reports.step(18.0), "silent": sample_reports.silent(),
-    "searching": sample_reports.searching(), "empty": {},
+    "searching": sample_reports.searching(), "empty": {}, "full": sample_reports.full(),
 }  # fmt: skip
 SIZES = [(360.0, 260.0), (720.0, 300.0), (1200.0, 420.0)]
 RAISED = str.maketrans("⁻⁰¹²³⁴⁵⁶⁷⁸⁹", "-0123456789")
@@ -56,7 +69,8 @@ def test_rates_read_back():
 @pytest.mark.parametrize("name", views.VIEWS)
 @pytest.mark.parametrize("report", REPORTS.values(), ids=REPORTS)
 def test_svg_is_sound(name, report, theme):
-    shown = views.VIEWS[name](report, None)
+    given = [report] if name in views.OF_SEVERAL else report
+    shown = views.VIEWS[name](given, SETTINGS)
     text = svg.render(shown, theme)
     tree = xml.fromstring(text)
     names = {"s": "http://www.w3.org/2000/svg"}
@@ -65,7 +79,7 @@ def test_svg_is_sound(name, report, theme):
     for reference in tree.get("aria-labelledby").split():
         assert tree.find(f".//*[@id='{reference}']") is not None
     assert "style=" not in text and "<script" not in text and "http" not in text.replace("http://www.w3.org/2000/svg", "")
-    assert svg.render(views.VIEWS[name](report, None), theme) == text
+    assert svg.render(views.VIEWS[name](given, SETTINGS), theme) == text
     if theme == "page":
         assert not re.search(r"#[0-9a-f]{6}", text)
 
@@ -126,9 +140,12 @@ def test_spread_moves_least():
 
 
 @pytest.mark.parametrize("size", SIZES)
+@pytest.mark.parametrize("name", views.VIEWS)
 @pytest.mark.parametrize("report", REPORTS.values(), ids=REPORTS)
-def test_ladder_labels_stand_apart(report, size):
-    shown = views.ladder(report, None, size)
+@pytest.mark.parametrize("known", [SETTINGS, None], ids=["set", "no set"])
+def test_texts_stand_apart_within_the_frame(report, name, size, known):
+    shown = views.VIEWS[name]([report] if name in views.OF_SEVERAL else report, known, size)
+    assert shown.width == size[0]
     assert overlaps(shown) == [] and outside(shown) == []
 
 
@@ -177,17 +194,6 @@ def test_ladder_says_on_which_side():
         total.update(ser=ratio * exact, ser_low=0.8 * ratio * exact, ser_high=1.2 * ratio * exact)
         said = [text for text in views.ladder(report, None).texts() if text[:1] in "▲=▼"]
         assert said[0].startswith(sign), (ratio, said)
-
-
-def settings_of(signal_set, detector="ml"):
-    """As watch::settings() writes them."""
-    found = {
-        "set": signal_set.name, "points": [[p.real, p.imag] for p in signal_set.points], "labels": signal_set.label_strings,
-        "pattern": "draw:2026", "law": "awgn", "detector": detector, "decisions": "own", "confidence": 0.95, "window": 10000,
-    }  # fmt: skip
-    if not signal_set.uniform:
-        found["priors"] = list(signal_set.priors)
-    return found
 
 
 def counted(signal_set, es_n0_db, sent, factor=lambda i, j: 1.0, seed=1, detector="automatic"):
@@ -305,3 +311,161 @@ def test_map_shows_samples_and_labels_on_demand():
     assert set(FIRN.label_strings) <= set(full.texts())
     dots = next(item for item in full.items if isinstance(item, drawing.Cloud))
     assert len(dots.points) == 2000
+
+
+def test_heading_answers_three_questions():
+    def said(report):
+        return [(each.state, each.answer) for each in views.answers(report)]
+
+    report = sample_reports.full()
+    assert said(report) == [("good", "Locked"), ("open", "0.25 dB short at the input"), ("open", "Undecided: SER below 10⁻³")]
+    report["verdict"]["state"] = "pass"
+    report["lock"]["state"] = "lost"
+    report["shortfall"]["decision"] = {"db": 1.5, "db_low": 1.2, "db_high": 1.8}
+    assert said(report) == [("bad", "Lock lost"), ("bad", "1.50 dB short at the decision"), ("good", "Passes: SER below 10⁻³")]
+    report["shortfall"]["decision"] = {"db": -0.5, "db_low": -0.6, "db_high": -0.4}
+    assert said(report)[1] == ("open", "0.50 dB better than Gaussian noise")
+    assert [state for state, _ in said({})] == ["quiet"] * 3
+    assert said(sample_reports.silent())[2] == ("open", "SER below 3.00·10⁻⁴, 95 % sure")
+    told = views.heading(report).description
+    assert all(each.answer in told and each.detail in told for each in views.answers(report))
+
+
+def test_share_of_all_but_a_few_is_not_all():
+    assert words.percent(0.99999) == "99.99 %" and words.percent(1.0) == "100 %" and words.percent(0.0022) == "0.22 %"
+
+
+def bars(shown, role):
+    return [item for item in shown.items if isinstance(item, drawing.Bar) and item.role == role and item.note]
+
+
+def test_losses_add_up_to_the_shortfall_at_the_input():
+    report = sample_reports.full()
+    found, total = views.losses.__globals__["parts"](report)
+    assert math.isclose(sum(db for _, db, _ in found), report["shortfall"]["input"]["db"], abs_tol=1e-12) and total == 0.25
+    shown = views.losses(report)
+    lengths = {bar.note.split(":")[0]: bar.width for bar in [*bars(shown, "loss"), *bars(shown, "ground"), *bars(shown, "measured_soft")]}
+    unit = lengths["shortfall at the input"] / 0.25
+    for each in report["losses"]:
+        assert math.isclose(lengths[words.name(each["cause"])], unit * each["cost_db"], abs_tol=0.02)
+        assert f"+{each['cost_db']:.2f} dB" in shown.texts()
+    assert math.isclose(lengths["not explained"], unit * 0.07, abs_tol=0.02)
+    hatched = [item.note.split(":")[0] for item in shown.items if getattr(item, "hatch", False)]
+    assert hatched == ["not explained"]
+    # Each bar begins where the one above it ends.
+    row = [bar for bar in shown.items if isinstance(bar, drawing.Bar) and bar.role in ("loss", "ground")]
+    assert all(math.isclose(a.x + a.width, b.x, abs_tol=0.01) for a, b in zip(row, row[1:]))
+
+
+def test_losses_without_the_input_show_no_rest():
+    report = sample_reports.full()
+    del report["shortfall"]["input"]
+    shown = views.losses(report)
+    assert not any(getattr(item, "hatch", False) for item in shown.items) and "not known" in shown.description
+
+
+def test_account_adds_up_and_says_everything():
+    report = sample_reports.full()
+    total = report["total"]
+    shown = views.account(report)
+    assert sum(number for _, number, _ in views.account.__globals__["rows"](report)) == total["in"]
+    texts = shown.texts()
+    for number in (total["in"], total["judged"], total["pending"], total["nonfinite"], *total["excluded"].values()):
+        assert words.count(number) in texts
+    assert "fails by 0.12 dB" in texts and "too few symbols to tell" in texts
+    assert "Undecided: SER below 10⁻³, about 1.2 million symbols to go" in texts
+    assert any("no target was given" in text for text in views.account(sample_reports.step(12.0)).texts())
+
+
+def live_run(number, slips_at=(), lost=(0, 0)):
+    """Reports of a run as they come, counters only growing."""
+    excluded, slips = {"before_lock": 904, "slip": 0, "signal_lost": 0, "overflow": 0}, 0
+    for k in range(number):
+        gone = lost[0] <= k < lost[1]
+        if k in slips_at:
+            slips, excluded["slip"] = slips + 1, excluded["slip"] + 500
+        if gone:
+            excluded["signal_lost"] += 1000
+        yield {
+            "sequence": k, "lock": {"state": "lost" if gone else "held"},
+            "total": {"in": 10_000 * (k + 1), "seconds": float(k + 1), "excluded": dict(excluded), "slips": slips},
+            "shortfall": {"input": {"db": 0.3 + 0.001 * (k % 7), "db_low": 0.2, "db_high": 0.4}},
+        }  # fmt: skip
+
+
+def test_trace_keeps_memory_flat_and_every_event():
+    trace = views.Trace(most=300)
+    after = []
+    tracemalloc.start()
+    for k, report in enumerate(live_run(10_000, slips_at=range(0, 10_000, 97), lost=(4000, 4100))):
+        trace.add(report)
+        if k in (1000, 9999):
+            after.append(tracemalloc.get_traced_memory()[0])
+    tracemalloc.stop()
+    assert len(trace.spans) <= 300 and trace.reports == 10_000
+    assert after[1] < 1.2 * after[0]
+    slips = len(range(0, 10_000, 97))
+    assert sum(span.slips for span in trace.spans) == slips
+    events = {cause: sum(span.events.get(cause, 0) for span in trace.spans) for cause in ("before_lock", "slip", "signal_lost")}
+    assert events == {"before_lock": 904, "slip": 500 * slips, "signal_lost": 100_000}
+    spans = trace.spans
+    assert spans[0].start == 0 and spans[-1].end == 10_000 and all(a.end == b.start for a, b in zip(spans, spans[1:]))
+    gaps = [span for span in spans if span.lock == "lost"]
+    assert gaps[0].start <= 4000 and gaps[-1].end >= 4100 and gaps[-1].end - gaps[0].start < 400
+    # The latest part is as it came.
+    assert spans[-1].end - spans[-1].start == 1 and spans[-1].falls["input"] == (0.3 + 0.001 * (9999 % 7), 0.2, 0.4)
+
+
+def test_history_of_many_reports_is_small():
+    text = svg.render(views.history(views.Trace(live_run(10_000, slips_at=range(0, 10_000, 97)))))
+    assert len(text) < 120_000
+
+
+def test_history_shows_gaps_events_and_the_latest_shortfall():
+    shown = views.history(list(live_run(100, slips_at=(70,), lost=(40, 50))), None, (1200, 420))
+    gaps = [item for item in shown.items if isinstance(item, drawing.Bar) and item.note == "not locked"]
+    assert len(gaps) == 1
+    ticks = [line.points[0][0] for line in shown.items if isinstance(line, drawing.Line) and line.role == "quiet" and line.points[0][0] == line.points[1][0]]
+    seconds = (max(ticks) - min(ticks)) / 100
+    assert math.isclose(gaps[0].x, min(ticks) + 40 * seconds, abs_tol=0.1) and math.isclose(gaps[0].width, 10 * seconds, abs_tol=0.1)
+    slip = next(item for item in shown.items if isinstance(item, drawing.Mark) and item.shape == "diamond" and "left out" in item.note)
+    assert math.isclose(slip.x, min(ticks) + 70.5 * seconds, abs_tol=0.1)
+    assert "slip: 500 symbols in 1" in shown.texts() and "signal lost: 10 000 symbols" in shown.texts()
+    assert "Latest shortfall at the input: 0.30 dB (0.20 to 0.40 dB)" in shown.description
+
+
+def test_history_of_several_runs_has_a_line_between():
+    runs = [*live_run(20), *live_run(20)]
+    shown = views.history(runs)
+    assert sum(getattr(item, "note", "") == "another run begins" for item in shown.items) == 1
+    assert len(views.Trace(runs).spans) == 40 and views.Trace(runs).spans[-1].end == 40
+
+
+def test_curve_points_and_curves_are_the_numbers():
+    reports = [sample_reports.step(es_n0_db) for es_n0_db in (8.0, 12.0, 16.0)]
+    shown = views.curve(reports, SETTINGS, kind="ber")
+    exact = next(item for item in shown.items if isinstance(item, drawing.Line) and item.role == "exact")
+    marks = [item for item in shown.items if isinstance(item, drawing.Mark) and item.shape == "circle" and item.note]
+    assert len(marks) == 3
+    for mark, report in zip(marks, reports):
+        total = report["total"]
+        assert mark.note.startswith(f"{words.rate(total['ber'])} ({words.rate(total['ber_low'])} to {words.rate(total['ber_high'])})")
+    # Both axes from two marks; then every vertex of the curve must be the predictor's rate.
+    t1, t2 = reports[0]["total"], reports[2]["total"]
+    across = (marks[2].x - marks[0].x) / (t2["es_n0_db"] - t1["es_n0_db"])
+    up = (marks[2].y - marks[0].y) / math.log10(t2["ber"] / t1["ber"])
+    for x, y in exact.points[:-1]:
+        es_n0_db = t1["es_n0_db"] + (x - marks[0].x) / across
+        ber = t1["ber"] * 10 ** ((y - marks[0].y) / up)
+        assert math.isclose(ber, float(predictor(FIRN).ber(es_n0_db)), rel_tol=1e-6)
+
+
+def test_curve_without_errors_points_down():
+    shown = views.curve([sample_reports.silent()], SETTINGS)
+    assert [item.shape for item in shown.items if isinstance(item, drawing.Mark) and item.note] == ["down", "down"]
+    assert "below 3.00·10⁻⁴" in shown.description
+
+
+def test_lines_are_cut_at_the_frame():
+    pieces = axes.clipped([(0, -10), (10, 10), (20, 30), (30, 5)], 0, 20)
+    assert pieces == [((5, 0), (10, 10), (15, 20)), ((24, 20), (30, 5))]

@@ -94,3 +94,23 @@ class LinearAxis:
         if digits > 6 or abs(value) >= 1e7:
             return f"{value:.3g}".replace("-", "−")
         return f"{value + 0.0:.{digits}f}".replace("-", "−")
+
+
+def clipped(line: list[tuple[float, float]], top: float, bottom: float) -> list[tuple[tuple[float, float], ...]]:
+    """The pieces of a polyline between two heights of a drawing, cut where it crosses them."""
+    pieces: list[list[tuple[float, float]]] = []
+    last_end = None
+    for (x1, y1), (x2, y2) in zip(line, line[1:]):
+        if max(y1, y2) < top or min(y1, y2) > bottom:
+            last_end = None
+            continue
+        ends = []
+        for x, y in ((x1, y1), (x2, y2)):
+            inside = min(max(y, top), bottom)
+            ends.append((x, y) if inside == y else (x1 + (x2 - x1) * (inside - y1) / (y2 - y1), inside))
+        if last_end == ends[0]:
+            pieces[-1].append(ends[1])
+        else:
+            pieces.append(ends)
+        last_end = ends[1]
+    return [tuple(piece) for piece in pieces]

@@ -6,6 +6,8 @@ from __future__ import annotations
 import functools
 import math
 
+import numpy as np
+
 from .. import core_python as core
 
 # Beyond so many points a report counts no transitions, and a map shows neither arrows nor labels.
@@ -20,6 +22,7 @@ class Basis:
         self.predictor = core.predictor(self.set, law, detector)
         self._outlines: tuple | None = None
         self._shares: tuple | None = None
+        self._curve: tuple | None = None
 
     @property
     def map_cells(self) -> bool:
@@ -35,6 +38,14 @@ class Basis:
         if self._outlines is None or self._outlines[0] != (frame, n0):
             self._outlines = (frame, n0), core.outlines(self.set, *frame, n0)
         return self._outlines[1]
+
+    def curve(self, low: float, high: float) -> dict:
+        """predictor.rates over a range of Es/N0 in dB, with es_n0_db; fewer values where each takes long."""
+        if self._curve is None or self._curve[0] != (low, high):
+            number = 97 if self.set.size <= 256 else 33 if self.set.size <= 1024 else 13
+            at = np.linspace(low, high, number)
+            self._curve = (low, high), {"es_n0_db": at.tolist(), **self.predictor.rates(at)}
+        return self._curve[1]
 
     def _rates_and_transitions(self, es_n0_db: float):
         """Exact error rate of each point, and P(j|i); to a tenth of a decibel, since only their ratios are used."""

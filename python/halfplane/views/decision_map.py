@@ -6,16 +6,21 @@ from __future__ import annotations
 import math
 from statistics import NormalDist
 
-from . import basis, lettering, words
+from . import basis, legend, lettering, words
 from .axes import LinearAxis
-from .drawing import Arrow, Bar, Cloud, Drawing, Line, Mark, Polygon, Text
+from .drawing import Arrow, Cloud, Drawing, Line, Mark, Polygon, Text
 
 SIZE = (560.0, 600.0)
 # A tile or an arrow takes a colour where its count departs so far from expectation that chance would colour any of all
 # that are shown only so often.
 CHANCE = 0.01
-_LEFT, _RIGHT, _TOP, _FOOT = 46.0, 14.0, 10.0, 88.0
+_LEFT, _RIGHT, _TOP = 46.0, 14.0, 10.0
 _MOST_DOTS = 2000
+_ENTRIES = [
+    legend.Entry("swatch", "fewer", "fewer errors than expected", strength=0.55, sign="minus"),
+    legend.Entry("swatch", "even", "as expected", sign="circle"),
+    legend.Entry("swatch", "more", "more", strength=0.55, sign="plus"),
+]
 
 
 def decision_map(
@@ -32,7 +37,8 @@ def decision_map(
         out.add(Text(_RIGHT, 24, "The set is not known yet", "quiet", 13))
         return out
     total = report.get("total", {})
-    plane = _Plane(link.set.points, link.set.d_min, size)
+    foot = 66 + legend.height(_ENTRIES, size[0] - 24)
+    plane = _Plane(link.set.points, link.set.d_min, (size[0], size[1] - foot))
     errors = link.errors_by_point(total)
     dispersion = total.get("dispersion", 1.0)
     detailed = link.set.size <= basis.MOST_POINTS_IN_DETAIL
@@ -60,7 +66,7 @@ class _Plane:
     """Where the plane of the set lies in the drawing: both axes to one scale."""
 
     def __init__(self, points, d_min: float, size: tuple[float, float]):
-        width, height = size[0] - _LEFT - _RIGHT, size[1] - _TOP - _FOOT
+        width, height = size[0] - _LEFT - _RIGHT, size[1] - _TOP
         i, q = points.real, points.imag
         middle = complex((i.max() + i.min()) / 2, (q.max() + q.min()) / 2)
         reach_i, reach_q = (i.max() - i.min()) / 2, (q.max() - q.min()) / 2
@@ -94,8 +100,7 @@ class _Plane:
                 else:
                     out.add(Line(((at, below), (at, below + 4)), "quiet"))
                     out.add(Text(at, below + 15, label, "quiet", 10.5, "middle"))
-        out.add(Text(x + width, below + 28, "in phase, the set's unit", "quiet", 10.5, "end"))
-        out.add(Text(max(2, x - 40), below + 28, "up: quadrature, the same unit", "quiet", 10.5))
+        out.add(Text(out.width / 2, below + 28, "across in phase, up in quadrature (the set's unit)", "quiet", 10.5, "middle"))
 
 
 def _draw_tiles(out: Drawing, link, plane: _Plane, total: dict, errors, dispersion: float, clear: float) -> list[str]:
@@ -185,13 +190,7 @@ def _draw_arrows(out: Drawing, link, plane: _Plane, total: dict, dispersion: flo
 
 
 def _draw_legend(out: Drawing, link, total: dict, errors) -> None:
-    y, x = out.height - 40, 14.0
-    for role, shape, label in (("fewer", "minus", "fewer errors than expected"), ("even", "circle", "as expected"), ("more", "plus", "more")):
-        out.add(Bar(x, y - 11, 18, 14, role, None, strength=0.55 if role != "even" else 1.0, round=2))
-        out.add(Mark(x + 9, y - 4, shape, "ink", 8 if shape != "circle" else 4))
-        label = lettering.shortened(label, out.width - x - 30, 11)
-        out.add(Text(x + 24, y, label, "quiet", 11))
-        x += 24 + lettering.width(label, 11) + 14
+    legend.draw(out, _ENTRIES, 14, out.height - 33 - legend.height(_ENTRIES, out.width - 24), out.width - 24)
     cells = "MAP cells" if link.map_cells else "nearest-point cells"
     if link.map_cells and "es_n0_db" in total:
         cells += f" at {words.db(total['es_n0_db'], 1)} dB"

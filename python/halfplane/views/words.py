@@ -78,3 +78,121 @@ def factor(value: float) -> str:
         return "0"
     digits = max(0, 2 - math.floor(math.log10(value)))
     return f"{value:.{min(digits, 4)}f}"
+
+
+VERDICTS = ("pass", "fail", "undecided")
+PREMISE_STATES = {"holds": ("good", "holds"), "fails": ("bad", "fails"), "too_few": ("quiet", "too few symbols to tell")}
+_NAMES = {
+    "iq_imbalance": "I/Q imbalance", "imbalance": "I/Q imbalance", "gain_phase": "gain and phase", "evm": "EVM", "mer": "MER",
+    "excess_noise": "receiver noise", "unexplained": "not explained", "rest": "not explained", "coloured": "coloured noise",
+}  # fmt: skip
+
+
+def name(key: str) -> str:
+    """A cause's or a premise's name in words."""
+    return _NAMES.get(key, key.replace("_", " "))
+
+
+def percent(share: float) -> str:
+    """A share with two significant digits."""
+    value = 100 * share
+    if value == 0:
+        return "0 %"
+    if value < 0.001:
+        return "below 0.001 %"
+    if 99 <= value < 100:  # not all: never rounded to it
+        return f"{min(value, 99.99):.2f} %"
+    return f"{value:.{max(0, 1 - math.floor(math.log10(value)))}f} %"
+
+
+def ends(fall: dict) -> str:
+    """The interval of a shortfall: '0.45 to 0.49'."""
+    if "db_low" in fall and "db_high" in fall:
+        return f"{db(fall['db_low'])} to {db(fall['db_high'])} dB"
+    if "db_low" in fall:
+        return f"above {db(fall['db_low'])} dB"
+    if "db_high" in fall:
+        return f"below {db(fall['db_high'])} dB"
+    return ""
+
+
+def shortfall(fall: dict) -> str:
+    """A shortfall with its interval: '0.47 dB (0.45 to 0.49 dB)'; an end alone where there is no estimate."""
+    if not fall:
+        return UNKNOWN
+    if "db" not in fall:
+        return ends(fall)
+    return f"{db(fall['db'])} dB" + (f" ({ends(fall)})" if ends(fall) else "")
+
+
+def lock(state: dict, slips: int = 0) -> str:
+    """What lock was found, in words."""
+    parts = []
+    if "delay" in state:
+        parts.append(f"delay {count(state['delay'])} symbols")
+    if state.get("rotation_deg"):
+        parts.append(f"turned {state['rotation_deg']:g}°")
+    parts += [word for word in ("mirrored", "inverted") if state.get(word)]
+    if slips:
+        parts.append(f"{count(slips)} slip" + ("s" if slips != 1 else ""))
+    return ", ".join(parts)
+
+
+def counted(total: dict) -> str:
+    """'2 341 errors in 19 998 240 symbols'."""
+    errors = total.get("symbol_errors", 0)
+    return f"{count(errors)} error{'s' if errors != 1 else ''} in {count(total.get('symbols', 0))} symbols"
+
+
+def certainty(total: dict, confidence: float) -> tuple[str, str]:
+    """How well the symbol error rate is known → (words, role): good from an interval of a tenth on either side on."""
+    ser, low, high = (total.get("ser" + end) for end in ("", "_low", "_high"))
+    if ser is None or high is None:
+        return "No symbol judged yet", "quiet"
+    if not low:
+        return f"SER below {rate(high)}, {100 * confidence:g} % sure", "open"
+    half = (high - low) / 2 / ser
+    return f"SER to ±{percent(half)}", "good" if half <= 0.1 else "open"
+
+
+def target(of: dict) -> str:
+    """'BER below 10⁻⁵'."""
+    return ", ".join(f"{kind.upper()} below {_short(value)}" for kind, value in of.items() if isinstance(value, (int, float))) or UNKNOWN
+
+
+def _short(value: float) -> str:
+    """A round rate without the digits that say nothing: 10⁻⁵, 2.5·10⁻³."""
+    if value >= 0.01:
+        return f"{value:.3g}"
+    mantissa, _, exponent = f"{value:.2e}".partition("e")
+    mantissa = mantissa.rstrip("0").rstrip(".")
+    return power_of_ten(int(exponent)) if mantissa == "1" else f"{mantissa}·{power_of_ten(int(exponent))}"
+
+
+def about(number: float) -> str:
+    """A large number in words, two digits: '1.2 million'."""
+    for size, word in ((1e12, "million million"), (1e9, "thousand million"), (1e6, "million")):
+        if number >= size:
+            return f"{number / size:.{0 if number >= 10 * size else 1}f} {word}"
+    return count(float(f"{number:.2g}"))
+
+
+def verdict(found: dict) -> str:
+    """A verdict in a sentence's head."""
+    state = found.get("state")
+    if state not in VERDICTS:
+        return UNKNOWN.capitalize()
+    said = {"pass": "Passes", "fail": "Fails", "undecided": "Undecided"}[state]
+    wanted = target(found.get("target", {}))
+    return f"{said}: {wanted}" if wanted != UNKNOWN else said
+
+
+def premise(found: dict) -> str:
+    """'fails by 0.12 dB', 'holds', 'too few symbols to tell'."""
+    state = found.get("state")
+    if state == "fails":
+        return f"fails by {db(found['effect_db'])} dB" if "effect_db" in found else "fails"
+    said = PREMISE_STATES.get(state, ("quiet", UNKNOWN))[1]
+    if state == "holds" and "effect_db" in found:
+        said += f" (effect {db(found['effect_db'])} dB)"
+    return said
