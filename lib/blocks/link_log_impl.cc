@@ -16,15 +16,26 @@ const pmt::pmt_t& report_port()
     return port;
 }
 
-} // namespace
-
-link_log::sptr link_log::make(const std::string& path)
+/// Without the settings where the log knows them: they may be longer than the report, and turning them into
+/// text would be in vain.
+pmt::pmt_t without_known_settings(const pmt::pmt_t& message, const std::string& digest)
 {
-    return gnuradio::make_block_sptr<link_log_impl>(path);
+    static const pmt::pmt_t settings = pmt::mp("settings"), key = pmt::mp("settings_sha256");
+    const bool known = !digest.empty() && pmt::is_dict(message) &&
+                       pmt::eqv(pmt::dict_ref(message, key, pmt::PMT_NIL), pmt::mp(digest));
+    return known ? pmt::dict_delete(message, settings) : message;
 }
 
-link_log_impl::link_log_impl(const std::string& path)
-    : gr::block("link_log", gr::io_signature::make(0, 0, 0), gr::io_signature::make(0, 0, 0)), d_log(path)
+} // namespace
+
+link_log::sptr link_log::make(const std::string& path, std::uint64_t max_bytes)
+{
+    return gnuradio::make_block_sptr<link_log_impl>(path, max_bytes);
+}
+
+link_log_impl::link_log_impl(const std::string& path, std::uint64_t max_bytes)
+    : gr::block("link_log", gr::io_signature::make(0, 0, 0), gr::io_signature::make(0, 0, 0)),
+      d_log(path, max_bytes)
 {
     if (d_log.failing())
         throw std::invalid_argument("link_log: path is '" + path + "'; " + d_log.last_error());
@@ -49,10 +60,12 @@ void link_log_impl::write(const pmt::pmt_t& message)
 {
     const std::lock_guard<std::mutex> lock(d_mutex);
     try {
-        const auto line = pmt_to_json(message);
+        auto line = pmt_to_json(without_known_settings(message, d_log.settings_digest()));
         const bool was_failing = d_log.failing();
-        if (!d_log.write(line) && !was_failing)
+        if (!d_log.write(std::move(line)) && !was_failing)
             d_logger->error("a report is not in the log: {:s}", d_log.last_error());
+        else if (was_failing && !d_log.failing())
+            d_logger->warn("the log goes on; {:d} reports are missing", d_log.failed());
     } catch (const std::exception& error) {
         d_logger->error("a message is no report: {:s}", error.what());
     }

@@ -13,7 +13,7 @@ namespace gr::halfplane {
 class link_log_impl final : public link_log
 {
 public:
-    explicit link_log_impl(const std::string& path);
+    link_log_impl(const std::string& path, std::uint64_t max_bytes);
 
     std::uint64_t written() const override;
     /// Every publisher's call ends up here, before the scheduler's queue. Messages on `report` are written at

@@ -81,10 +81,9 @@ link_watch_impl::link_watch_impl(const ::halfplane::signal_set& set,
           gr::io_signature::make(0, 0, 0)),
       d_reporter(set,
                  options_of(pattern, window, confidence, symbol_rate, decisions),
-                 {0.1, [this](const ::halfplane::link::report& made) {
-                      message_port_pub(report_port(), json_to_pmt(made));
-                  }})
+                 {0.1, [this](const ::halfplane::link::report& made) { publish(made); }})
 {
+    d_settings = json_to_pmt(d_reporter.settings());
     message_port_register_out(report_port());
     const pmt::pmt_t input = pmt::mp("input");
     message_port_register_in(input);
@@ -117,6 +116,12 @@ bool link_watch_impl::stop()
                         d_reporter.failures(),
                         d_reporter.last_failure());
     return true;
+}
+
+void link_watch_impl::publish(const ::halfplane::link::report& made)
+{
+    static const pmt::pmt_t settings = pmt::mp("settings");
+    message_port_pub(report_port(), pmt::dict_add(json_to_pmt(made), settings, d_settings));
 }
 
 void link_watch_impl::take_input(const pmt::pmt_t& message)

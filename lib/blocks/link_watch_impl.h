@@ -27,9 +27,11 @@ public:
     int work(int noutput_items, gr_vector_const_void_star& in, gr_vector_void_star& out) override;
 
 private:
+    void publish(const ::halfplane::link::report& made);
     void take_input(const pmt::pmt_t& message);
     void take_tag(const gr::tag_t& tag);
 
+    pmt::pmt_t d_settings;                  ///< made once, a part of every message
     ::halfplane::link::reporter d_reporter; ///< locks for itself
 };
 

@@ -7,6 +7,7 @@
 #include <unistd.h>
 
 #include <cerrno>
+#include <cstdio>
 #include <system_error>
 
 namespace halfplane::link {
@@ -35,7 +36,8 @@ bool ends_within_a_line(int file, off_t size)
 
 } // namespace
 
-report_log::report_log(std::string path) : d_path(std::move(path))
+report_log::report_log(std::string path, std::uint64_t max_bytes)
+    : d_path(std::move(path)), d_max_bytes(max_bytes)
 {
     if (!open())
         d_failed = 0; // no line was lost yet
@@ -73,23 +75,68 @@ bool report_log::open()
         return fail("cannot be opened", errno);
     struct stat about {
     };
-    d_torn =
-        ::fstat(d_file, &about) == 0 && S_ISREG(about.st_mode) && ends_within_a_line(d_file, about.st_size);
+    const bool regular = ::fstat(d_file, &about) == 0 && S_ISREG(about.st_mode);
+    d_torn = regular && ends_within_a_line(d_file, about.st_size);
+    d_settings_due |= regular && about.st_size == 0;
     return true;
 }
 
-bool report_log::write(const report& line)
+/// Renames the file to the first number that is free and opens a new one. Where the name cannot be changed
+/// the file goes on to grow: a log that is too long is better than none.
+bool report_log::put_aside()
 {
+    for (unsigned long k = 1;; ++k) {
+        const auto name = d_path + "." + std::to_string(k);
+        if (::access(name.c_str(), F_OK) == 0)
+            continue;
+        if (std::rename(d_path.c_str(), name.c_str()) != 0) {
+            d_error = d_path + ": cannot be put aside: " + std::generic_category().message(errno);
+            return true;
+        }
+        close();
+        return open();
+    }
+}
+
+void report_log::take_settings(report& line)
+{
+    const auto settings = line.find("settings");
+    if (settings == line.end())
+        return;
+    auto digest = line.value("settings_sha256", std::string());
+    if (d_settings.empty() || digest != d_digest) {
+        d_settings =
+            report{{"schema", "halfplane/settings/1"}, {"settings_sha256", digest}, {"settings", *settings}}
+                .dump() +
+            '\n';
+        d_digest = std::move(digest);
+        d_settings_due = true;
+    }
+    line.erase(settings);
+}
+
+std::string report_log::text_of(const report& line) const
+{
+    return (d_torn ? "\n" : "") + (d_settings_due ? d_settings : "") + line.dump() + '\n';
+}
+
+bool report_log::write(report line)
+{
+    take_settings(line);
     if (d_file < 0 && !open())
         return false;
-    std::string text = line.dump();
-    text += '\n';
-    if (d_torn)
-        text.insert(text.begin(), '\n');
+    std::string text = text_of(line);
 
     struct stat before {
     };
-    const bool regular = ::fstat(d_file, &before) == 0 && S_ISREG(before.st_mode);
+    bool regular = ::fstat(d_file, &before) == 0 && S_ISREG(before.st_mode);
+    if (regular && d_max_bytes > 0 && before.st_size > 0 &&
+        static_cast<std::uint64_t>(before.st_size) + text.size() > d_max_bytes) {
+        if (!put_aside())
+            return false;
+        text = text_of(line);
+        regular = ::fstat(d_file, &before) == 0 && S_ISREG(before.st_mode);
+    }
     const std::size_t done = write_all(d_file, text);
     const int error = errno;
     if (done < text.size()) {
@@ -97,7 +144,7 @@ bool report_log::write(const report& line)
             return fail("a part of a line could not be taken back", errno); // closed off when opened again
         return fail("cannot be written", error);
     }
-    d_torn = false;
+    d_torn = d_settings_due = false;
     // EINVAL and EROFS: the file is of a kind that has nothing to synchronise.
     if (::fdatasync(d_file) != 0 && errno != EINVAL && errno != EROFS)
         return fail("cannot be brought to disk", errno);

@@ -1,6 +1,7 @@
 # SPDX-License-Identifier: GPL-3.0-or-later
 """Running links with ideal timing: what is counted lies where the exact rung says, and what is gauged where it was set."""
 
+import hashlib
 import json
 
 import numpy as np
@@ -47,13 +48,42 @@ def test_reported_is_written(tmp_path):
     for run in range(50):
         log = tmp_path / f"{run}.jsonl"
         report, _, _ = run_link(which, 8.0, 9000, window=1000, log=log)
-        lines = [json.loads(line) for line in log.read_text().splitlines()]
+        settings, *lines = [json.loads(line) for line in log.read_text().splitlines()]
+        assert settings["schema"] == "halfplane/settings/1"
+        assert settings["settings_sha256"] == report["settings_sha256"]
         # The log's time went through PMT and has three decimals.
         last, final = lines[-1], report
         assert last.pop("time")[:19] == final.pop("time")[:19]
         assert last == final, run
         assert final["final"] is True
         assert [line["sequence"] for line in lines] == list(range(lines[0]["sequence"], lines[0]["sequence"] + len(lines)))
+
+
+def test_settings_travel_with_each_message_and_stand_once_in_the_log(tmp_path):
+    """The digest is formed again here, by Python's JSON and SHA-256; the message has what the log has."""
+    from gnuradio import blocks, gr
+
+    which = halfplane.load_set(FIRN)
+    sent = np.random.default_rng(1).integers(len(which.points), size=20000)
+    watch = halfplane.link_watch(which, "draw:1", 100, symbol_rate=9600.0)
+    log, ear = halfplane.link_log(str(tmp_path / "log.jsonl")), blocks.message_debug()
+    graph = gr.top_block()
+    graph.connect(blocks.vector_source_c(np.array(which.points)[sent].tolist()),
+                  blocks.throttle(gr.sizeof_gr_complex, 60000), (watch, 0))
+    graph.connect(blocks.vector_source_s(sent.tolist()), (watch, 1))
+    graph.msg_connect(watch, "report", ear, "store")
+    graph.msg_connect(watch, "report", log, "report")
+    graph.run()
+    first, *reports = [json.loads(line) for line in (tmp_path / "log.jsonl").read_text().splitlines()]
+    assert len(reports) == log.written() and len(reports) > 1
+    assert all("settings" not in report for report in reports)
+    settings = first["settings"]
+    assert settings["set"] == which.name and len(settings["points"]) == len(settings["labels"]) == len(which.points)
+    assert np.allclose([complex(*point) for point in settings["points"]], which.points, rtol=0, atol=0)
+    digest = hashlib.sha256(json.dumps(settings, sort_keys=True, separators=(",", ":")).encode()).hexdigest()
+    assert digest == first["settings_sha256"] == reports[0]["settings_sha256"]
+    message = json.loads(halfplane.pmt_to_json(ear.get_message(0)))
+    assert message.pop("settings") == settings and message == reports[0]
 
 
 def test_window_closes_and_the_last_one_is_counted():

@@ -24,7 +24,9 @@ def test_two_steps(what, tmp_path):
     assert done.returncode == 0, done.stderr
     names = {"points.svg", "points.png", "shortfall.svg", "shortfall.png", "reports.jsonl"}
     assert {path.name for path in tmp_path.iterdir()} == names and all(path.stat().st_size > 500 for path in tmp_path.iterdir())
-    reports = [json.loads(line) for line in (tmp_path / "reports.jsonl").read_text().splitlines()]
+    lines = [json.loads(line) for line in (tmp_path / "reports.jsonl").read_text().splitlines()]
+    assert lines[0]["schema"] == "halfplane/settings/1" and len(lines[0]["settings"]["points"]) > 1
+    reports = [line for line in lines if line["schema"] == "halfplane/report/1"]
     for report in reports:
         total = report["total"]
         assert total["in"] == total["judged"] + total["nonfinite"] + total["pending"] + sum(total["excluded"].values())

@@ -11,7 +11,9 @@
 namespace gr::halfplane {
 
 /*!
- * Message port `report` (in): each dict becomes one line of JSON, appended to the file.
+ * Message port `report` (in): each dict becomes one line of JSON, appended to the file. Its `settings` stand
+ * once, on a line ahead: in every file, of every run, and again where they change (halfplane/link/log.h has
+ * the form).
  *
  * A message is written before the publisher's call returns, in the publisher's thread. So what was reported
  * was also written, even the final report of a flowgraph that ends: the scheduler's own queue would lose
@@ -24,11 +26,13 @@ public:
 
     /*!
      * \param path file to append to; created where it does not exist
-     * \throws std::invalid_argument where the file cannot be opened, with the path and the reason
+     * \param max_bytes size beyond which the file is put aside as path.1, path.2 …, the highest number the
+     * latest; 0: never \throws std::invalid_argument where the file cannot be opened, with the path and the
+     * reason
      */
-    static sptr make(const std::string& path);
+    static sptr make(const std::string& path, std::uint64_t max_bytes = 0);
 
-    /// Lines written so far.
+    /// Reports written so far.
     virtual std::uint64_t written() const = 0;
 };
 

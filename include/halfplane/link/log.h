@@ -10,7 +10,19 @@
 namespace halfplane::link {
 
 /*!
- * Appends one line of JSON a report. write() returns when the line has been handed to the disk (fdatasync),
+ * Appends one line of JSON a report. A report may carry the `settings` it was made under; in the file they
+ * stand once, on a line of their own ahead of the first report of a file, of a process, and of a report whose
+ * `settings_sha256` is another than that of the report before:
+ *
+ *     {"schema": "halfplane/settings/1", "settings_sha256": …, "settings": {…}}
+ *
+ * Such a line and the report behind it are written together or not at all, and only reports are counted.
+ *
+ * A file that would grow beyond `max_bytes` is put aside first: as `path.1`, the next one as `path.2` and so
+ * on, the highest number the latest. One report is never split, so a file is longer than that where one line
+ * is.
+ *
+ * write() returns when the line has been handed to the disk (fdatasync),
  * so it survives the end of the process and, where the disk keeps its promises, the loss of power; it takes
  * as long as the disk takes, so call it from a thread that may wait (reporter's `on_report`). On files that
  * cannot be synchronised (pipes, character devices) the line is written only.
@@ -24,14 +36,16 @@ class report_log
 {
 public:
     /// Opens or creates the file. Where that fails, lines are tried all the same: see failed() and
-    /// last_error().
-    explicit report_log(std::string path);
+    /// last_error(). \param max_bytes size beyond which the file is put aside; 0: never
+    explicit report_log(std::string path, std::uint64_t max_bytes = 0);
     ~report_log();
     report_log(const report_log&) = delete;
     report_log& operator=(const report_log&) = delete;
 
     /// Whether the line is on disk.
-    bool write(const report& line);
+    bool write(report line);
+    /// Of the settings that are known: a report under the same may come without them. Empty at first.
+    const std::string& settings_digest() const noexcept { return d_digest; }
 
     const std::string& path() const noexcept { return d_path; }
     std::uint64_t written() const noexcept { return d_written; }
@@ -44,11 +58,17 @@ public:
 private:
     bool open();
     void close();
+    bool put_aside();
+    void take_settings(report& line);
+    std::string text_of(const report& line) const;
     bool fail(const char* doing, int error);
 
     std::string d_path;
+    std::uint64_t d_max_bytes;
     int d_file = -1;
-    bool d_torn = false; ///< the file ends within a line
+    bool d_torn = false;              ///< the file ends within a line
+    std::string d_digest, d_settings; ///< of the latest report that had some; the line that says them
+    bool d_settings_due = true;       ///< they stand ahead of the next report
     bool d_failing = false;
     std::uint64_t d_written = 0, d_failed = 0;
     std::string d_error;
