@@ -56,8 +56,11 @@ struct judgement {
  * need more steps anyway). The shortest length is taken at which adjacent blocks do not err together: no
  * serial correlation above 0.03 (Wald and Wolfowitz, Ann. Math. Statist. 14 (1943) 378; from memory) that a
  * normal or, for rare heavy blocks side by side, a Poisson tail calls significant at 1 %. Shorter lengths
- * lose their say, with all they won. Where no length of at least 16 blocks is free, the verdict stays
- * `undecided`; so does a `fail` that rests on fewer than 20 errors in 8 blocks.
+ * lose their say, with all they won. Correlation that may be there
+ * and is not significant yet raises the wealth that a verdict needs, from ln(2/α) to ln(2/α)·(1 + 2.5·r) with
+ * r the measured one and two standard errors (once two blocks were hit): at targets near 0.1 a few blocks
+ * decide, sooner than their dependence shows. Where no length of at least 16 blocks is free, the verdict
+ * stays `undecided`; so does a `fail` that rests on fewer than 20 errors in 8 blocks.
  *
  * An error-free run passes after about ln(2/(0.64·α))/p blocks: `dependence` times what independent errors
  * would ask for, and that is the price of not trusting luck.
@@ -80,6 +83,8 @@ public:
 
     /// \param excluded steps that were left out so far; nonfinite ones are among them
     judgement look(std::uint64_t excluded = 0) const;
+    /// look().state at a fraction of the work, for those who ask all the time.
+    finding state(std::uint64_t excluded = 0) const;
 
     const verdict_options& options() const noexcept { return d_options; }
 
@@ -113,9 +118,13 @@ private:
     void close_clear(std::size_t at, std::uint64_t blocks);
     void close_hit(std::size_t at, double errors);
     level& level_at(std::size_t at);
+    static double correlation(const level& l);
     static bool hangs_together(const level& l);
+    static double inflation(const level& l);
     std::optional<std::size_t> free_level() const;
-    double wealth_needed() const;
+    double wealth_needed(const level& l) const;
+    bool forbidden(const level& l, finding kind, std::uint64_t excluded) const;
+    double most_wealth(const side& s, std::size_t from) const;
     double log_wealth(const side& s, std::size_t from) const;
     std::optional<double> blocks_to_go(const side& s, std::size_t at) const;
     side passing() const;
