@@ -15,6 +15,7 @@ _COMMANDS = {
     "require": "the Es/N0 that a target error rate needs",
     "plan": "how many symbols a test of an error rate takes",
     "simulate": "count errors in seeded noise, beside the exact rate",
+    "report": "an acceptance report from logs: HTML, PDF or JSON",
     "sets": "the constellations that have names",
 }
 

@@ -37,9 +37,10 @@ def decision_map(
         out.add(Text(_RIGHT, 24, "The set is not known yet", "quiet", 13))
         return out
     total = report.get("total", {})
-    foot = 66 + legend.height(_ENTRIES, size[0] - 24)
-    plane = _Plane(link.set.points, link.set.d_min, (size[0], size[1] - foot))
     errors = link.errors_by_point(total)
+    entries = _ENTRIES if errors is not None else []
+    foot = 66 + legend.height(entries, size[0] - 24)
+    plane = _Plane(link.set.points, link.set.d_min, (size[0], size[1] - foot))
     dispersion = total.get("dispersion", 1.0)
     detailed = link.set.size <= basis.MOST_POINTS_IN_DETAIL
     clear = clear_deviation(link.set.size + len(total.get("transitions", ())))
@@ -52,7 +53,7 @@ def decision_map(
     if detailed:
         _draw_arrows(out, link, plane, total, dispersion, clear)
     _draw_points(out, link, plane, errors, dispersion, clear, labels and detailed)
-    _draw_legend(out, link, total, errors)
+    _draw_legend(out, link, total, entries)
     out.description = _description(link, total, said)
     return out
 
@@ -189,14 +190,14 @@ def _draw_arrows(out: Drawing, link, plane: _Plane, total: dict, dispersion: flo
         )
 
 
-def _draw_legend(out: Drawing, link, total: dict, errors) -> None:
-    legend.draw(out, _ENTRIES, 14, out.height - 33 - legend.height(_ENTRIES, out.width - 24), out.width - 24)
+def _draw_legend(out: Drawing, link, total: dict, entries: list[legend.Entry]) -> None:
+    legend.draw(out, entries, 14, out.height - 33 - legend.height(entries, out.width - 24), out.width - 24)
     cells = "MAP cells" if link.map_cells else "nearest-point cells"
     if link.map_cells and "es_n0_db" in total:
         cells += f" at {words.db(total['es_n0_db'], 1)} dB"
     if link.set.size > basis.MOST_POINTS_IN_DETAIL:
         said = f"{cells}; sets above {basis.MOST_POINTS_IN_DETAIL} points are not counted cell by cell"
-    elif errors is None:
+    elif not entries:
         said = f"{cells}; errors cell by cell {words.UNKNOWN}"
     else:
         said = f"{cells}; an arrow leads from sent to decided, its width is the count over its expectation"

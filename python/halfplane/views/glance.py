@@ -51,7 +51,7 @@ def _as_good(report: dict) -> Answer:
         return Answer(question, "quiet", words.UNKNOWN.capitalize(), "a shortfall takes some errors")
     low, high = at.get("db_low", at["db"]), at.get("db_high", at["db"])
     ends = words.ends(at)
-    if high < 0:
+    if high < -NONE_DB:
         answer, role = f"{words.db(-at['db'])} dB better than Gaussian noise", "open"
         detail = "; ".join(filter(None, ("what disturbs it is not Gaussian", detail)))
     elif low <= NONE_DB:

@@ -66,7 +66,7 @@ def against(measured: float, low: float | None, high: float | None, exact: float
     never by the estimate alone.
     """
     if high is not None and exact > high:
-        return "fewer", f"{factor(measured / exact)} of exact" if measured > 0 else "fewer than predicted"
+        return "fewer", f"{factor(measured / exact)} × exact" if measured > 0 else "fewer than predicted"
     if low is not None and exact < low:
         return "more", f"{factor(measured / exact)} × exact"
     return "even", "as predicted within the interval"
