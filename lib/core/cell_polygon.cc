@@ -36,7 +36,7 @@ void cell_polygon::start(double half_width)
     d_vertices = {{-w, -w}, {w, -w}, {w, w}, {-w, w}};
 }
 
-bool cell_polygon::cut(const cut_line& line, double tolerance)
+cell_polygon::outcome cell_polygon::cut(const cut_line& line, double tolerance)
 {
     const std::size_t n = d_vertices.size();
     d_depth.resize(n);
@@ -47,11 +47,11 @@ bool cell_polygon::cut(const cut_line& line, double tolerance)
         shallowest = std::min(shallowest, d_depth[k]);
     }
     if (deepest <= tolerance)
-        return true;
+        return outcome::unchanged;
     if (shallowest >= 0) {
         d_lines.clear();
         d_vertices.clear();
-        return false;
+        return outcome::empty;
     }
     d_next_lines.clear();
     d_next_vertices.clear();
@@ -72,7 +72,7 @@ bool cell_polygon::cut(const cut_line& line, double tolerance)
     }
     d_lines.swap(d_next_lines);
     d_vertices.swap(d_next_vertices);
-    return true;
+    return outcome::smaller;
 }
 
 double cell_polygon::reach() const

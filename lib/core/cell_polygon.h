@@ -21,11 +21,9 @@ public:
     /// Starts from the square |i|, |q| ≤ half_width.
     void start(double half_width);
 
-    /*!
-     * Cuts away n·y > offset, unless nothing reaches farther than `tolerance` beyond the line.
-     * \returns false when nothing is left
-     */
-    bool cut(const cut_line& line, double tolerance);
+    enum class outcome { unchanged, smaller, empty };
+    /// Cuts away n·y > offset, unless nothing reaches farther than `tolerance` beyond the line.
+    outcome cut(const cut_line& line, double tolerance);
 
     /// Distance of the farthest vertex from the origin.
     double reach() const;

@@ -47,6 +47,7 @@ public:
             high = {std::max(high.real(), p.real()), std::max(high.imag(), p.imag())};
         }
         d_size = std::abs(high - low);
+        d_scale = std::ldexp(1.0, -std::ilogb(d_size));
         if (!weights.empty()) {
             const auto range = std::minmax_element(weights.begin(), weights.end());
             d_heaviest = *range.second;
@@ -67,9 +68,15 @@ public:
             if (!d_grid.ring(at, ring, d_ring))
                 return true;
             d_candidates.clear();
-            for (const auto j : d_ring)
-                if (j != i)
-                    d_candidates.push_back({std::abs(d_points[j] - at), j});
+            for (const auto j : d_ring) {
+                if (j == i)
+                    continue;
+                const double distance = distance_of(d_points[j] - at);
+                if (started)
+                    d_nearest = std::min(d_nearest, distance);
+                if (!started || threshold_at(distance, weight, j) < reach)
+                    d_candidates.push_back({distance, j});
+            }
             std::sort(d_candidates.begin(), d_candidates.end(), [](const candidate& a, const candidate& b) {
                 return a.distance < b.distance;
             });
@@ -87,9 +94,11 @@ public:
                 if (threshold >= reach)
                     continue;
                 const cut_line line{(d_points[c.index] - at) / c.distance, threshold, c.index};
-                if (!polygon.cut(line, cut_tolerance * d_nearest))
+                const auto done = polygon.cut(line, cut_tolerance * d_nearest);
+                if (done == cell_polygon::outcome::empty)
                     return false;
-                reach = polygon.reach();
+                if (done == cell_polygon::outcome::smaller)
+                    reach = polygon.reach();
             }
             const double cleared = d_grid.cleared(ring);
             if (started && cleared > 0 && cleared / 2 - (d_heaviest - weight) / (2 * cleared) > reach)
@@ -101,6 +110,8 @@ public:
     cell_polygon polygon;
 
 private:
+    /// |z|, for distances within the set: scaled by a power of two, squares neither overflow nor vanish.
+    double distance_of(complex z) const { return std::sqrt(std::norm(z * d_scale)) / d_scale; }
     /// Distance of the border towards point j, measured from point i.
     double threshold_at(double distance, double weight, std::size_t j) const
     {
@@ -110,7 +121,7 @@ private:
     const std::vector<complex>& d_points;
     const std::vector<double>& d_weights;
     point_grid d_grid;
-    double d_size, d_heaviest = 0, d_weight_range = 0, d_nearest = 0;
+    double d_size, d_scale, d_heaviest = 0, d_weight_range = 0, d_nearest = 0;
     std::vector<std::uint16_t> d_ring;
     std::vector<candidate> d_candidates;
 };

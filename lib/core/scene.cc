@@ -2,87 +2,21 @@
 // scene: signed sums of wedges over edges (SER), walls (BER) and whole lines (the bounds).
 #include "scene.h"
 
-#include "halfplane/wedge.h"
+#include "bit_classes.h"
+#include "scaled_wedge.h"
 
 #include <algorithm>
 #include <array>
 #include <cmath>
-#include <cstring>
 #include <limits>
 #include <map>
+#include <numeric>
 
 namespace halfplane {
 
 namespace {
 
 constexpr double inf = std::numeric_limits<double>::infinity();
-
-/// Squared distance from the mean to the nearest place of an edge.
-double squared_approach(const edge_view& v)
-{
-    const double aside = std::max({0.0, v.from, -v.to});
-    return v.height * v.height + aside * aside;
-}
-
-/// Wedges divided by exp(ln_scale).
-class scaled_wedge
-{
-public:
-    scaled_wedge(const noise& n, double least_squared_distance)
-        : d_noise(n), d_ln_scale(ln_tail(least_squared_distance))
-    {
-    }
-
-    double ln_scale() const { return d_ln_scale; }
-    /// The number that stands for probability 1.
-    double one() const { return std::exp(-d_ln_scale); }
-
-    double operator()(const edge_view& v) const
-    {
-        const double k = d_noise.per_unit;
-        const double h = std::abs(v.height) * k;
-        const auto w =
-            d_noise.fading ? wedge(*d_noise.fading, h, v.from * k, v.to * k) : wedge(h, v.from * k, v.to * k);
-        // Rounding alone separates equal exponents; where they are beyond 1e15 it must not overflow.
-        return w.integral * std::exp(std::min(1.0, -w.exponent - d_ln_scale));
-    }
-
-    /// Probability beyond a whole line at signed distance h: more than half where h < 0.
-    double half_plane(double h) const
-    {
-        const double w = (*this)({h, -inf, inf});
-        return h >= 0 ? w : one() - w;
-    }
-
-    /// The distance at which the tail over the scale has fallen to exp(ln_ratio).
-    double distance_at(double ln_ratio) const
-    {
-        const double wanted = -(ln_ratio + d_ln_scale);
-        if (!d_noise.fading)
-            return std::sqrt(2 * wanted) / d_noise.per_unit;
-        double low = 0, high = 1;
-        while (d_noise.fading->ln_tail(high) > -wanted && high < 1e300)
-            high *= 4;
-        while (high - low > 0.01 * high) {
-            const double middle = 0.5 * (low + high);
-            (d_noise.fading->ln_tail(middle) > -wanted ? low : high) = middle;
-        }
-        return std::sqrt(2 * high) / d_noise.per_unit;
-    }
-
-    /// ln of tail at this squared distance over the scale.
-    double relative_ln_tail(double squared_distance) const { return ln_tail(squared_distance) - d_ln_scale; }
-
-private:
-    double ln_tail(double squared_distance) const
-    {
-        const double u = 0.5 * squared_distance * d_noise.per_unit * d_noise.per_unit;
-        return d_noise.fading ? d_noise.fading->ln_tail(u) : -u;
-    }
-
-    noise d_noise;
-    double d_ln_scale;
-};
 
 /// The smallest distance at which anything goes wrong: sets the scale.
 double least_squared_distance(const scene& s)
@@ -138,49 +72,6 @@ void exact_ser(const scene& s, const scaled_wedge& w, rate_sums& out)
             out.by_point[i] /= sent_weight[i];
 }
 
-/// Wedges by their look: in a grid the same few come back over and over, to the last bit.
-class wedge_memory
-{
-public:
-    wedge_memory(const scaled_wedge& w, std::size_t edges) : d_wedge(w)
-    {
-        while (d_bits < 12 && (std::size_t{1} << d_bits) < 4 * edges)
-            ++d_bits;
-        d_known.assign(std::size_t{1} << d_bits, {{-1, 0, 0}, 0});
-    }
-    double operator()(const edge_view& seen)
-    {
-        edge_view v{std::abs(seen.height), seen.from, seen.to};
-        if (v.from + v.to < 0)
-            v = {v.height, -v.to, -v.from};
-        auto& place = d_known[slot(v)];
-        if (place.look.height != v.height || place.look.from != v.from || place.look.to != v.to)
-            place = {v, d_wedge(v)};
-        return place.mass;
-    }
-
-private:
-    struct entry {
-        edge_view look;
-        double mass;
-    };
-    static std::uint64_t pattern(double x)
-    {
-        std::uint64_t bits;
-        std::memcpy(&bits, &x, sizeof bits);
-        return bits;
-    }
-    std::size_t slot(const edge_view& v) const
-    {
-        const auto mixed = (pattern(v.height) * 0x9E3779B97F4A7C15u ^ pattern(v.from)) * 0xBF58476D1CE4E5B9u;
-        return (mixed ^ mixed >> 29) * 0x94D049BB133111EBu >> (64 - d_bits);
-    }
-
-    const scaled_wedge& d_wedge;
-    unsigned d_bits = 6;
-    std::vector<entry> d_known;
-};
-
 /// Adds one arrival's wrong bits to by_bit (leftmost first), walls beyond `reach` left out.
 void add_wrong_bits(
     const scene& s, wedge_memory& w, double one, const arrival& a, double reach, std::vector<double>& by_bit)
@@ -202,8 +93,7 @@ void add_wrong_bits(
                 continue;
             const double p = w(v);
             // Bits that read right on the near side go wrong beyond the wall, the others come right.
-            const label_t near = v.height >= 0 ? border.inner_bits : border.mask & ~border.inner_bits;
-            const label_t wrong_near = border.mask & (near ^ sent);
+            const label_t wrong_near = border.wrong_on_near_side(v, sent);
             for (unsigned left = border.mask; left != 0; left &= left - 1) {
                 const auto k = static_cast<unsigned>(__builtin_ctz(left));
                 sum[k] += (wrong_near >> k & 1) ? -p : p;
@@ -216,11 +106,18 @@ void add_wrong_bits(
 
 void exact_ber(const scene& s, const scaled_wedge& w, rate_sums& out)
 {
+    const unsigned bits = s.set->label_bits();
+    if (s.undisplaced && s.repeated) {
+        if (const auto& classes = s.repeated->bits(s)) {
+            out.by_bit = classes->wrong_bits(w);
+            out.exact.ber = std::accumulate(out.by_bit.begin(), out.by_bit.end(), 0.0) / bits;
+            return;
+        }
+    }
     // A wall farther than R adds at most half the tail there. R is guessed from where each bit changes first
     // and moved out until what all walls beyond could add is nothing to any bit's rate.
     constexpr double negligible = 1e-14;
     constexpr double nothing = -700;
-    const unsigned bits = s.set->label_bits();
     const double ln_share =
         std::log(2 * negligible / static_cast<double>(std::max<std::size_t>(1, s.walls->walls.size())));
     double ln_cut = 0;
@@ -351,6 +248,12 @@ const std::optional<std::vector<pair_class>>& repetitions::all(const signal_set&
 {
     std::call_once(d_once, [&] { d_all = classes_of_all(set); });
     return d_all;
+}
+
+const std::optional<bit_classes>& repetitions::bits(const scene& undisplaced) const
+{
+    std::call_once(d_bits_once, [&] { d_bits = bit_classes::of(undisplaced); });
+    return d_bits;
 }
 
 std::unique_ptr<repetitions> find_repetitions(const signal_set& set, const cells& regions)

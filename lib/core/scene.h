@@ -2,6 +2,7 @@
 // scene: everything a rate depends on but the noise, and the sums of wedges over it.
 #pragma once
 
+#include "bit_classes.h"
 #include "pair_classes.h"
 #include "rate_sums.h"
 #include "walls.h"
@@ -45,10 +46,13 @@ struct repetitions {
     std::vector<pair_class> facing, nearest;
     /// Of all pairs; gathered on first use.
     const std::optional<std::vector<pair_class>>& all(const signal_set& set) const;
+    /// Of all walls as seen from all points; gathered on first use.
+    const std::optional<bit_classes>& bits(const scene& undisplaced) const;
 
 private:
-    mutable std::once_flag d_once;
+    mutable std::once_flag d_once, d_bits_once;
     mutable std::optional<std::vector<pair_class>> d_all;
+    mutable std::optional<bit_classes> d_bits;
 };
 
 /// Groups the edges and pairs of a set. \returns never null

@@ -16,6 +16,12 @@ namespace halfplane {
 struct wall {
     edge line;
     label_t mask, inner_bits;
+
+    /// Of the bits that change here, those that differ from `sent` on the side from which the wall is seen.
+    label_t wrong_on_near_side(const edge_view& seen, label_t sent) const
+    {
+        return static_cast<label_t>(mask & ((seen.height >= 0 ? inner_bits : mask & ~inner_bits) ^ sent));
+    }
 };
 
 /// Walls first … last − 1 lie within `radius` of `centre`.

@@ -8,7 +8,11 @@
 
 #include <algorithm>
 #include <cmath>
+#include <cstdio>
+#include <map>
 #include <random>
+#include <string>
+#include <vector>
 
 using namespace halfplane;
 
@@ -169,9 +173,65 @@ BENCHMARK_TEMPLATE(ser_curve_50, scattered)->Arg(4096)->Unit(benchmark::kMillise
 BENCHMARK_TEMPLATE(ber_curve_50, square)->RangeMultiplier(4)->Range(16, 4096)->Unit(benchmark::kMillisecond);
 BENCHMARK_TEMPLATE(ber_curve_50, hexagonal)->Arg(1024)->Unit(benchmark::kMillisecond);
 BENCHMARK_TEMPLATE(ber_curve_50, scattered)->Arg(1024)->Arg(4096)->Unit(benchmark::kMillisecond);
-BENCHMARK_TEMPLATE(plain_ber_curve_50, square)->Arg(16)->Arg(64)->Unit(benchmark::kMillisecond);
+BENCHMARK_TEMPLATE(plain_ber_curve_50, square)->Arg(16)->Arg(64)->Arg(256)->Unit(benchmark::kMillisecond);
 BENCHMARK_TEMPLATE(all_transitions, square)->Arg(64)->Arg(256)->Unit(benchmark::kMillisecond);
 BENCHMARK_TEMPLATE(all_rungs, square)->Arg(16)->Arg(256)->Arg(4096)->Unit(benchmark::kMillisecond);
 BENCHMARK(map_at_one_level)->Arg(64)->Arg(256)->Unit(benchmark::kMillisecond);
 
-BENCHMARK_MAIN();
+namespace {
+
+/// Keeps what was measured, for the summary.
+class keeping : public benchmark::ConsoleReporter
+{
+public:
+    void ReportRuns(const std::vector<Run>& runs) override
+    {
+        for (const auto& run : runs)
+            cpu_ms[run.benchmark_name()] =
+                run.cpu_accumulated_time / static_cast<double>(run.iterations) * 1e3;
+        ConsoleReporter::ReportRuns(runs);
+    }
+    std::map<std::string, double> cpu_ms;
+};
+
+void summary(const std::map<std::string, double>& cpu_ms)
+{
+    struct {
+        const char* name;
+        double at_most;
+    } const wanted[] = {{"build_cells<scattered>/4096", 40},
+                        {"ser_curve_50<square>/64", 0.6},
+                        {"ser_curve_50<square>/4096", 30},
+                        {"ber_curve_50<square>/64", 8},
+                        {"ber_curve_50<square>/1024", 150},
+                        {"ber_curve_50<square>/4096", 700},
+                        {"all_transitions<square>/256", 10}};
+    std::printf("\n%-32s %10s %10s\n", "CPU, ms", "measured", "at most");
+    for (const auto& w : wanted)
+        if (const auto found = cpu_ms.find(w.name); found != cpu_ms.end())
+            std::printf("%-32s %10.3f %10.1f\n", w.name, found->second, w.at_most);
+
+    const auto ratio = [&](const std::string& a, const std::string& b, const char* what) {
+        if (cpu_ms.count(a) && cpu_ms.count(b))
+            std::printf("%-66s %8.2f  %s\n", (a + " / " + b).c_str(), cpu_ms.at(a) / cpu_ms.at(b), what);
+    };
+    std::printf("\nratios\n");
+    for (const char* m : {"16", "64", "256"})
+        ratio("plain_ber_curve_50<square>/" + std::string(m),
+              "ber_curve_50<square>/" + std::string(m),
+              "times the plain loop");
+    ratio("ber_curve_50<square>/4096", "ber_curve_50<square>/1024", "at most 8: M·√M");
+    ratio("ber_curve_50<scattered>/4096", "ber_curve_50<scattered>/1024", "at most 8: M·√M");
+}
+
+} // namespace
+
+int main(int argc, char** argv)
+{
+    benchmark::Initialize(&argc, argv);
+    if (benchmark::ReportUnrecognizedArguments(argc, argv))
+        return 1;
+    keeping reporter;
+    benchmark::RunSpecifiedBenchmarks(&reporter);
+    summary(reporter.cpu_ms);
+}
