@@ -100,7 +100,7 @@ class LinkView:
         width = min(self.console.width, 110)
         parts = [self._head(width), Text()]
         if self.step:
-            parts += [*_progress(self.step, width), Text(), *_measured(self.step.report, width)]
+            parts += [*_progress(self.step, width), Text(), *measured(self.step.report, width)]
         if self.done:
             parts += [Text(), steps_table(self.done, narrow=width < 104)]
         return Group(*parts)
@@ -170,7 +170,7 @@ def _progress(step, width):
     yield Text.assemble((left, shown.STRONG), ("━" * full, "cyan"), ("━" * (room - full), "bright_black"), (right, shown.QUIET))
 
 
-def _measured(report, width):
+def measured(report, width):
     total = report.get("total")
     if not total:
         yield Text("waiting for the first window", style=shown.QUIET)

@@ -72,6 +72,9 @@ def test_torn_lines_are_left_out_and_told(tmp_path, log):
         ('{"schema": "halfplane/report/1", "settings_sha256": "%s", "total": {"ser": NaN}}\n' % sample_logs.DIGEST, "NaN"),
         ('{"schema": "halfplane/report/1", "settings_sha256": "%s", "total": {"ser": "x"}}\n' % sample_logs.DIGEST, "no number"),
         ('{"schema": "halfplane/report/1", "losses": {}}\n', '"losses" is no list'),
+        ('{"schema": "halfplane/report/1", "losses": [{"cause": "echo", "cost_db": "1"}]}\n', '"losses.cost_db" is no number'),
+        ('{"schema": "halfplane/report/1", "confidence": null}\n', '"confidence" is no number'),
+        ('{"schema": "halfplane/report/1", "total": {"predicted": {"exact": 1}}}\n', '"total.predicted.exact" is no object'),
         ('{"schema": "halfplane/report/1", "settings_sha256": "00"}\n', "stand nowhere above"),
     ],
 )
@@ -221,6 +224,16 @@ def test_usage_is_checked_before_anything_is_read(tmp_path, log):
     assert ".html or .pdf" in refused("report", log, "--out", tmp_path / "x.doc")
     assert "there is no folder" in refused("report", log, "--out", tmp_path / "none" / "x.html")
     assert "does not exist" in refused("report", tmp_path / "none.jsonl", "--json")
+
+
+def test_run_that_was_put_aside_is_one_point(tmp_path):
+    reports = list(sample_logs.run(number=6))
+    first = sample_logs.write(tmp_path / "a.jsonl.1", sample_logs.settings_line(), *reports[:4])
+    second = sample_logs.write(tmp_path / "a.jsonl", sample_logs.settings_line(), *reports[4:])
+    found = document("report", first, second)
+    assert [(point["log"], point["lines"], point["report"]["sequence"]) for point in found["points"]] == [(1, [2, 3], 5)]
+    assert found["points"][0]["first_time"] == "2026-03-01T06:00:01.000Z"
+    assert len(document("report", second, first)["points"]) == 2
 
 
 def test_log_without_settings_is_reported_on(tmp_path):

@@ -16,6 +16,7 @@ _COMMANDS = {
     "plan": "how many symbols a test of an error rate takes",
     "simulate": "count errors in seeded noise, beside the exact rate",
     "report": "an acceptance report from logs: HTML, PDF or JSON",
+    "watch": "a running link in a terminal, from its log or its page",
     "sets": "the constellations that have names",
 }
 

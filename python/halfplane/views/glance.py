@@ -37,7 +37,7 @@ def _locked(report: dict) -> Answer:
         return Answer(question, "quiet", "Lock " + words.UNKNOWN)
     role, answer = {
         "held": ("good", "Locked"), "doubtful": ("open", "Lock in doubt"), "searching": ("open", "Searching"), "lost": ("bad", "Lock lost"),
-    }[state]  # fmt: skip
+    }.get(state, ("quiet", f"Lock {words.name(str(state))}"))  # fmt: skip
     return Answer(question, role, answer, words.lock(lock, report.get("total", {}).get("slips", 0)))
 
 

@@ -21,6 +21,7 @@ REPORT, SETTINGS = "halfplane/report/1", "halfplane/settings/1"
 _DICTS = ("window", "total", "input", "shortfall", "lock", "seconds", "verdict")
 _LISTS = ("losses", "premises")
 _COUNTS = ("symbols", "symbol_errors", "bits", "bit_errors", "in", "judged", "pending", "nonfinite", "slips", "first_symbol")
+_NUMBERS = ("p", "effect_db", "power_db", "cost_db")
 # What must be one and the same in all that one acceptance report speaks of.
 _COMMON = ("set", "pattern", "law", "detector", "decisions", "confidence")
 _COMMON_SETTINGS = ("points", "labels", "priors")
@@ -109,6 +110,18 @@ class Reader:
                     raise self._error(f'"{part}.{key}" is no count: {value!r}')
                 if key.split("_")[0] in ("ser", "ber", "es", "evm", "mer") and not _is_number(value):
                     raise self._error(f'"{part}.{key}" is no number: {value!r}')
+        numbers = [("confidence", report.get("confidence", 0))]
+        numbers += [(f"{key}.{name}", each[name]) for key in _LISTS for each in report.get(key, ()) for name in _NUMBERS if name in each]
+        numbers += [(f"lock.{key}", value) for key, value in report.get("lock", {}).items() if key in ("delay", "rotation_deg", "frequency")]
+        numbers += [(f"input.{key}", value) for key, value in report.get("input", {}).items() if key != "source"]
+        numbers += [(f"total.excluded.{key}", value) for key, value in _dict(report.get("total", {}).get("excluded")).items()]
+        for key, value in numbers:
+            if not _is_number(value):
+                raise self._error(f'"{key}" is no number: {value!r}')
+        for part in ("total", "window"):
+            for rung, figures in _dict(report.get(part, {}).get("predicted")).items():
+                if not isinstance(figures, dict) or not all(map(_is_number, figures.values())):
+                    raise self._error(f'"{part}.predicted.{rung}" is no object of numbers')
         for place, fall in report.get("shortfall", {}).items():
             if not isinstance(fall, dict) or not all(map(_is_number, fall.values())):
                 raise self._error(f'"shortfall.{place}" is no object of numbers')
@@ -119,6 +132,10 @@ class Reader:
         if not sound or not isinstance(labels, list) or len(labels) != len(points):
             raise self._error("the settings' points and labels are not as many pairs of numbers and texts")
         return settings
+
+
+def _dict(value) -> dict:
+    return value if isinstance(value, dict) else {}
 
 
 def _is_number(value) -> bool:
@@ -140,9 +157,9 @@ def of_message(message: dict) -> tuple[dict | None, dict]:
 
 @dataclass
 class Run:
-    """One run within a log: from where its sequence starts to its latest report."""
+    """One run: from where its sequence starts to its latest report, across files where the log was put aside."""
 
-    log: int  # number of the log
+    log: int  # number of the log that its latest report stands in; the lines are of this one
     first_line: int
     last_line: int
     first_time: str
@@ -184,10 +201,9 @@ def lines(path: str | Path) -> Iterator[tuple[Record | None, bytes, bool]]:
 
 def read(paths) -> Logs:
     """Reads logs, in the order given. Raises LogError where one holds no report, or where they are not of one link."""
-    found = Logs([], [], Trace())
+    found, before = Logs([], [], Trace()), None
     for number, path in enumerate(paths):
         digest, size, reports, torn, line = hashlib.sha256(), 0, 0, [], 0
-        sequence = None
         for record, raw, is_torn in lines(path):
             line += 1
             digest.update(raw)
@@ -196,23 +212,33 @@ def read(paths) -> Logs:
                 torn.append(line)
             if record is None:
                 continue
-            now = record.report.get("sequence")
-            again = sequence is not None and now is not None and now <= sequence
-            if reports == 0 or again:
+            if not _goes_on(before, record.report, reports == 0):
                 run = Run(number, line, line, record.report.get("time", ""), record.settings, record.report)
                 found.runs.append(run)
             else:
                 run = found.runs[-1]
+                if run.log != number:  # put aside and gone on in the next file
+                    run.log, run.first_line = number, line
                 run.last_line, run.report, run.settings = line, record.report, record.settings
                 run.reports += 1
             _agree(found.runs[0], run, found.logs, path)
             found.trace.add(record.report)
-            sequence = now
+            before = record.report
             reports += 1
         if reports == 0:
             raise LogError(f"{path}: no report in it")
         found.logs.append(Log(Path(path).name, digest.hexdigest(), size, reports, torn))
     return found
+
+
+def _goes_on(before: dict | None, report: dict, first_of_file: bool) -> bool:
+    """Whether a report is of the run before it: in one file as long as the sequence grows, in the next only where it goes on by one."""
+    if before is None:
+        return False
+    last, now = before.get("sequence"), report.get("sequence")
+    if first_of_file:
+        return now is not None and last is not None and now == last + 1 and before.get("settings_sha256") == report.get("settings_sha256")
+    return last is None or now is None or now > last
 
 
 def _agree(first: Run, run: Run, logs: list[Log], path) -> None:
