@@ -115,6 +115,8 @@ public:
     exact_rung displaced(double es_n0, const std::vector<complex>& means) const;
     /// The same for any number of places a point, say one for each interfering neighbour. Weights sum to 1.
     exact_rung displaced_among(double es_n0, const std::vector<displaced_point>& arrivals) const;
+    /// Its ln_ser alone, several times cheaper.
+    double displaced_ln_ser(double es_n0, const std::vector<displaced_point>& arrivals) const;
 
     /// Indices that point i faces at this Es/N0, ascending. Under MAP a point without a cell faces all
     /// others.

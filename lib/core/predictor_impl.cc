@@ -209,14 +209,15 @@ rate_sums predictor::impl::at(double es_n0, unsigned parts) const
     return averaged(es_n0, [&](const diagram& d, const noise& n) { return evaluate(d.view, n, parts); });
 }
 
-rate_sums predictor::impl::displaced(double es_n0, const std::vector<displaced_point>& arrivals) const
+rate_sums
+predictor::impl::displaced(double es_n0, const std::vector<displaced_point>& arrivals, unsigned parts) const
 {
     return averaged(es_n0, [&](const diagram& d, const noise& n) {
         std::vector<arrival> placed;
         for (const auto& a : arrivals)
             if (a.weight > 0)
                 d.add_arrival(a.sent, apply(to_detector, a.mean * scale), a.weight, 1 / n.per_unit, placed);
-        return evaluate(d.displaced(std::move(placed)), n, part_exact_ser | part_exact_ber);
+        return evaluate(d.displaced(std::move(placed)), n, parts);
     });
 }
 

@@ -53,7 +53,7 @@ struct predictor::impl {
     /// All asked figures, averaged over the channel.
     rate_sums at(double es_n0, unsigned parts) const;
     /// The same for other arrivals, means in the unit of the given set.
-    rate_sums displaced(double es_n0, const std::vector<displaced_point>& arrivals) const;
+    rate_sums displaced(double es_n0, const std::vector<displaced_point>& arrivals, unsigned parts) const;
     /// P(j|i) for all j and the given i, row after row.
     std::vector<double> rows(double es_n0, const std::vector<std::size_t>& sent) const;
     double ln_rate(double es_n0, rung_name r, bool bits) const;

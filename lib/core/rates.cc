@@ -5,6 +5,7 @@
 #include "predictor_impl.h"
 
 #include <cmath>
+#include <functional>
 #include <numeric>
 #include <sstream>
 #include <stdexcept>
@@ -96,18 +97,22 @@ exact_rung predictor::displaced(double es_n0, const std::vector<complex>& means)
     return displaced_among(es_n0, arrivals);
 }
 
-exact_rung predictor::displaced_among(double es_n0, const std::vector<displaced_point>& arrivals) const
+namespace {
+
+/// Finite means of points of the set, weights that sum to 1; else throws.
+void check_arrivals(const std::vector<displaced_point>& arrivals,
+                    const std::function<void(std::size_t)>& require_index)
 {
     double sum = 0;
     for (std::size_t k = 0; k < arrivals.size(); ++k) {
         const auto& a = arrivals[k];
-        d->require_index(a.sent);
+        require_index(a.sent);
         std::ostringstream text;
         if (!std::isfinite(a.mean.real()) || !std::isfinite(a.mean.imag()))
             text << "mean " << k << " is not finite: " << a.mean;
         else if (!(a.weight >= 0 && std::isfinite(a.weight)))
             text << "weight " << k << " must be a number of at least 0, got " << a.weight;
-        if (!text.str().empty())
+        if (text.tellp() > 0)
             throw std::invalid_argument(text.str());
         sum += a.weight;
     }
@@ -116,7 +121,20 @@ exact_rung predictor::displaced_among(double es_n0, const std::vector<displaced_
         text << "the weights of displaced points must sum to 1, they sum to " << sum;
         throw std::invalid_argument(text.str());
     }
-    return d->displaced(es_n0, arrivals).finish(d->set.label_bits()).exact;
+}
+
+} // namespace
+
+exact_rung predictor::displaced_among(double es_n0, const std::vector<displaced_point>& arrivals) const
+{
+    check_arrivals(arrivals, [&](std::size_t i) { d->require_index(i); });
+    return d->displaced(es_n0, arrivals, part_exact_ser | part_exact_ber).finish(d->set.label_bits()).exact;
+}
+
+double predictor::displaced_ln_ser(double es_n0, const std::vector<displaced_point>& arrivals) const
+{
+    check_arrivals(arrivals, [&](std::size_t i) { d->require_index(i); });
+    return d->displaced(es_n0, arrivals, part_exact_ser).finish(d->set.label_bits()).exact.ln_ser;
 }
 
 std::vector<std::size_t> predictor::facing(double es_n0, std::size_t i) const

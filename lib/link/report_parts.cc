@@ -89,6 +89,8 @@ nlohmann::json settings_of(const signal_set& set, const predictor& p, const watc
     s["window"] = options.window;
     if (options.symbol_rate > 0)
         s["symbol_rate"] = options.symbol_rate;
+    if (!options.explain)
+        s["explain"] = false;
     return s;
 }
 
@@ -146,6 +148,34 @@ report lock_of(const lock_status& lock)
     out["inverted"] = lock.inverted;
     out["frequency"] = lock.frequency;
     return out;
+}
+
+report losses_of(const std::vector<loss>& losses)
+{
+    report rows = report::array();
+    for (const auto& found : losses) {
+        report row = {{"cause", to_string(found.what)}};
+        if (found.power_db)
+            row["power_db"] = *found.power_db;
+        row["cost_db"] = found.cost_db;
+        rows.push_back(std::move(row));
+    }
+    return rows;
+}
+
+report premises_of(const std::vector<premise>& premises)
+{
+    report rows = report::array();
+    for (const auto& tested : premises) {
+        report row = {{"name", tested.name}};
+        if (tested.p)
+            row["p"] = *tested.p;
+        if (tested.effect_db)
+            row["effect_db"] = *tested.effect_db;
+        row["state"] = to_string(tested.state);
+        rows.push_back(std::move(row));
+    }
+    return rows;
 }
 
 report seconds_of(const second_counts& s)

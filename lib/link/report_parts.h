@@ -6,6 +6,8 @@
 #include "halfplane/gauge.h"
 #include "halfplane/interval.h"
 #include "halfplane/link/watch.h"
+#include "halfplane/losses.h"
+#include "halfplane/premises.h"
 #include "halfplane/shortfall.h"
 
 #include <optional>
@@ -43,6 +45,8 @@ report transitions_of(const transition_counts& counted,
 report input_of(const input_snr& input);
 report shortfall_of(const shortfall& s);
 report lock_of(const lock_status& lock);
+report losses_of(const std::vector<loss>& losses);
+report premises_of(const std::vector<premise>& premises);
 report seconds_of(const second_counts& s);
 
 } // namespace halfplane::link

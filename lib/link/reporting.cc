@@ -4,6 +4,8 @@
 
 #include "halfplane/link/sha256.h"
 
+#include <cmath>
+
 namespace halfplane::link {
 
 watch::reporting::reporting(const signal_set& set, watch_options options)
@@ -144,10 +146,28 @@ report watch::reporting::total(const window& w,
     return out;
 }
 
+/// Under a declared Es/N0 that changed, the constant one that expects as many errors.
+loss_question watch::reporting::asked(const std::optional<shortfall>& at_the_input) const
+{
+    loss_question question;
+    if (const auto n = d_at_input.symbols(); n > 0) {
+        const double ln_ser = d_at_input.at(d_curve, 0).ln_errors - std::log(static_cast<double>(n));
+        question.input_es_n0_db = es_n0_db_of(d_curve, ln_ser, d_at_input.highest_db());
+        if (at_the_input && at_the_input->db)
+            question.achieved_es_n0_db = *question.input_es_n0_db - *at_the_input->db;
+    } else if (d_counts.symbol_errors > 0) {
+        const double ser =
+            static_cast<double>(d_counts.symbol_errors) / static_cast<double>(d_counts.symbols);
+        question.achieved_es_n0_db = es_n0_db_of(d_curve, std::log(ser), 10);
+    }
+    return question;
+}
+
 report watch::reporting::report_of(window&& w, bool final)
 {
     d_counts.merge(w.counts);
     d_fit.merge(w.fit);
+    d_explanation.add(w.residuals);
     if (w.lock)
         d_lock = w.lock;
     if (w.input)
@@ -185,13 +205,21 @@ report watch::reporting::report_of(window&& w, bool final)
     if (d_input)
         out["input"] = input_of(*d_input);
     report shortfalls;
+    const auto input_shortfall = at_input(ends);
     for (const auto& [place, found] :
-         {std::pair{"decision", at_decision(ends)}, std::pair{"input", at_input(ends)}})
+         {std::pair{"decision", at_decision(ends)}, std::pair{"input", input_shortfall}})
         if (found)
             if (auto ends_found = shortfall_of(*found); !ends_found.empty())
                 shortfalls[place] = std::move(ends_found);
     if (!shortfalls.empty())
         out["shortfall"] = std::move(shortfalls);
+    d_explanation.refresh(d_predictor, d_curve, asked(input_shortfall), final);
+    if (d_explanation.symbols() > 0)
+        out["explained_symbols"] = d_explanation.symbols();
+    if (!d_explanation.losses().empty())
+        out["losses"] = losses_of(d_explanation.losses());
+    if (!d_explanation.premises().empty())
+        out["premises"] = premises_of(d_explanation.premises());
     if (d_lock)
         out["lock"] = lock_of(*d_lock);
     if (w.seconds.all() > 0)

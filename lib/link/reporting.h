@@ -3,6 +3,7 @@
 #pragma once
 
 #include "expected_errors.h"
+#include "explanation.h"
 #include "halfplane/link/watch.h"
 #include "halfplane/ser_curve.h"
 #include "halfplane/shortfall.h"
@@ -30,6 +31,7 @@ private:
     std::optional<expected_errors> prediction_of_run() const;
 
     report total(const window& w, const std::optional<gauge_result>& fit, const run_intervals& ends) const;
+    loss_question asked(const std::optional<shortfall>& at_the_input) const;
     std::optional<shortfall> at_decision(const run_intervals& ends) const;
     std::optional<shortfall> at_input(const run_intervals& ends) const;
 
@@ -55,6 +57,8 @@ private:
     // Shortfall at the decision: full stretches but the last, the last full one, and what followed it.
     snr_record d_at_decision;
     gauge d_last_stretch, d_open_stretch;
+
+    explanation d_explanation;
 
     // Shortfall at the input.
     snr_record d_at_input;

@@ -49,6 +49,7 @@ void watch::window::merge(window&& later)
 {
     counts.merge(later.counts);
     fit.merge(later.fit);
+    residuals.merge(later.residuals);
     blocks = later.blocks;
     seconds = later.seconds;
     pending = later.pending;
@@ -73,6 +74,8 @@ struct watch::counting {
         map = o.rule == detector::map || (o.rule == detector::automatic && !s.uniform());
         if (!receiver_decisions)
             decider.emplace(set);
+        if (o.explain)
+            residuals.emplace(set);
     }
 
     void take(const std::complex<float>* in,
@@ -97,6 +100,7 @@ struct watch::counting {
     bool map = false;
     double map_n0 = 0; // what the decider was built for; 0: nearest point
     std::optional<point_decider> decider;
+    std::optional<residual_gatherer> residuals;
 
     window open;
     std::uint64_t in_window = 0, handed = 0, pending = 0;
@@ -149,6 +153,8 @@ void watch::counting::take(const std::complex<float>* in,
         judge(in, reinterpret_cast<const std::uint16_t*>(reference), decided.data(), n);
     else
         take_with_exclusions(in, reference, decided.data(), n);
+    if (residuals)
+        residuals->add(in, reference, n);
 }
 
 void watch::counting::take_with_exclusions(const std::complex<float>* in,
@@ -199,6 +205,8 @@ void watch::counting::close(const window_handler& on_window)
     open.seconds = seconds.counts();
     open.lock = lock;
     open.pending = pending;
+    if (residuals)
+        open.residuals = residuals->take();
     open.input = input;
     if (map)
         if (const auto fit = open.fit.solve(set))

@@ -6,6 +6,7 @@
 #include "halfplane/gauge.h"
 #include "halfplane/link/aligner.h"
 #include "halfplane/rates.h"
+#include "halfplane/residuals.h"
 #include "halfplane/second_counts.h"
 #include "halfplane/signal_set.h"
 #include "halfplane/symbol_code.h"
@@ -40,6 +41,7 @@ struct watch_options {
     double confidence = 0.95;        ///< of every interval, in (0, 1)
     double symbol_rate = 0;          ///< Hz; 0 where unknown; below 1 there are no `seconds`
     std::uint64_t window = 10000;    ///< symbols handed in, judged or not, after which a window closes; ≥ 1
+    bool explain = true;             ///< gather what losses and premises are made of
     std::function<std::string()> clock; ///< UTC, RFC 3339; the system's clock where empty
 };
 
@@ -60,7 +62,8 @@ public:
         std::uint64_t first_symbol = 0; ///< place in the stream handed in, from 0
         tally counts;
         halfplane::gauge fit;
-        block_counts blocks; ///< of the run up to the window's end
+        residual_sums residuals; ///< empty unless `explain`
+        block_counts blocks;     ///< of the run up to the window's end
         second_counts
             seconds; ///< of the run up to the window's end, complete ones; none without a symbol rate
         std::optional<lock_status> lock;
