@@ -226,9 +226,16 @@ def test_expected_errors_of_each_point_are_those_of_the_symbols_sent():
 def test_deviation_is_standard_normal_for_a_poisson_count():
     draw = np.random.default_rng(3)
     for expected in (5.0, 40.0, 3000.0):
-        values = [basis.deviation(k, expected) for k in draw.poisson(expected, 4000)]
-        # mean 0 ± 0.12 for the smallest (bias 1/(8√x)), deviation 1: 4 standard errors of 4,000 draws are 0.06 and 0.05
-        assert abs(np.mean(values)) < 0.13 and abs(np.std(values) - 1) < 0.08, expected
+        values = [basis.deviation(k, expected) for k in draw.poisson(expected, 40_000)]
+        # 4 standard errors of 40,000 draws are 0.02 and 0.014; the transform itself is off by less than 0.01 and 0.05.
+        assert abs(np.mean(values)) < 0.03 and abs(np.std(values) - 1) < 0.065, expected
+    assert math.isclose(basis.deviation(400, 300, 4.0), basis.deviation(400, 300) / 2)
+
+
+def test_chance_colours_any_of_all_once_in_a_hundred():
+    """Quantiles of the normal distribution from a table: 0.995 and 0.99995."""
+    clear = views.decision_map.__globals__["clear_deviation"]
+    assert math.isclose(clear(1), 2.575829, abs_tol=1e-6) and math.isclose(clear(100), 3.890592, abs_tol=1e-6)
 
 
 def tiles(shown):
@@ -254,6 +261,11 @@ def test_map_colours_and_signs_what_departs():
     assert {name for name, role in roles.items() if role == "fewer"} == {names[7]}
     marks = {item.note: item.shape for item in shown.items if isinstance(item, drawing.Mark) and item.note}
     assert marks[names[3]] == "plus" and marks[names[7]] == "minus" and marks[names[0]] == "circle"
+    places = {item.note: item for item in shown.items if isinstance(item, drawing.Mark) and item.note}
+    for one, other in itertools.combinations(range(12), 2):
+        way = FIRN.points[other] - FIRN.points[one]
+        assert (places[names[other]].x - places[names[one]].x) * way.real >= -1e-9  # to the right
+        assert (places[names[other]].y - places[names[one]].y) * way.imag <= 1e-9  # up
     assert names[3] in shown.description and names[7] in shown.description and names[0] not in shown.description
     numbers = [row for row in report["total"]["transitions"] if row[0] == 3]
     tile = next(tile for tile in tiles(shown) if tile.note.startswith(names[3]))

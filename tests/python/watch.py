@@ -63,6 +63,25 @@ def test_log_is_followed_across_rotation(tmp_path):
     link.close()
 
 
+def test_what_is_written_while_the_log_is_put_aside_is_not_lost(tmp_path):
+    """A report written between the look at the file and the look at its name."""
+    reports = list(sample_logs.run())
+    log = sample_logs.write(tmp_path / "a.jsonl", sample_logs.settings_line(), reports[0])
+    link = follow.follow(str(log))
+    was_replaced = link._was_replaced
+
+    def in_between():
+        with open(log, "a") as stream:
+            stream.write(line(reports[1]))
+        os.rename(log, tmp_path / "a.jsonl.1")
+        sample_logs.write(log, sample_logs.settings_line(), reports[2])
+        return was_replaced()
+
+    link._was_replaced = in_between
+    assert sequences(link) == [0, 1, 2]
+    link.close()
+
+
 def test_line_that_is_no_report_is_refused_with_its_place(tmp_path):
     log = sample_logs.write(tmp_path / "a.jsonl", next(sample_logs.run()), "something else\n")
     with pytest.raises(source.LogError, match="a.jsonl:2: no JSON"):
@@ -177,7 +196,10 @@ def test_without_a_terminal_each_report_gives_a_line(tmp_path):
 def test_screen_fits_the_width(width, report):
     console = Console(file=io.StringIO(), width=width, force_terminal=False, highlight=False)
     console.print(watching.screen(report, "/somewhere/far/away/in/a/deep/folder/firn-out/reports.jsonl", width))
-    assert max(map(len, console.file.getvalue().splitlines())) <= width
+    lines = console.file.getvalue().splitlines()
+    assert max(map(len, lines)) <= width
+    beside = any("Locked?" in each and "How sure is that?" in each for each in lines)
+    assert beside == (width >= 90)
 
 
 def test_screen_on_a_terminal_is_drawn_again(tmp_path):

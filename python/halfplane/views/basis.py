@@ -104,6 +104,6 @@ _made = functools.lru_cache(maxsize=8)(Basis)
 def deviation(counted: float, expected: float, dispersion: float = 1.0) -> float:
     """
     Standard deviations by which a count departs from its expectation, errors in clumps of `dispersion`: the square-root
-    transform of a Poisson count (Anscombe, Biometrika 35 (1948) 246), good from small counts on.
+    transform of a Poisson count (Anscombe, Biometrika 35 (1948) 246), whose mean is √(x + 1/8) up to order x^(−3/2).
     """
-    return 2 * (math.sqrt(counted + 0.375) - math.sqrt(expected + 0.375)) / math.sqrt(max(1.0, dispersion))
+    return 2 * (math.sqrt(counted + 0.375) - math.sqrt(expected + 0.125)) / math.sqrt(max(1.0, dispersion))
