@@ -115,8 +115,9 @@ public:
 private:
     void draw_place();
     void close_stretch();
-    void add_products();
-    void add_moments();
+    struct layout;
+    void add_products(const layout& at);
+    void add_moments(const layout& at);
 
     std::vector<complex> d_points; // divided by √Es
     double d_scale, d_kappa;

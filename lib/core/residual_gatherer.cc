@@ -11,21 +11,33 @@ namespace {
 
 constexpr std::size_t reach = column::reach, lanes = 2 * reach + 1;
 
-/// Σ_k x_k·conj(s_{k+lag}) for the nine lags at once: neighbours lie side by side, so the lanes vectorise.
-struct lagged {
-    std::array<double, lanes> re{}, im{};
+constexpr std::size_t stretch = residual_gatherer::stretch, seen = stretch + 2 * reach;
 
-    /// \param re0, im0 of s_{k−4} onwards
-    void add(complex x, const double* s_re, const double* s_im)
+/// Real and imaginary parts apart, so that loops over them vectorise.
+template <std::size_t n>
+struct parts {
+    std::array<double, n> re, im;
+    complex at(std::size_t k) const { return {re[k], im[k]}; }
+    void set(std::size_t k, complex x)
     {
-        const double a = x.real(), b = x.imag();
+        re[k] = x.real();
+        im[k] = x.imag();
+    }
+};
+
+/// Σ_k x_k·conj(s_{k+lane}) over a stretch, for all lanes at once: neighbours lie side by side.
+parts<lanes> correlate(const parts<stretch>& x, const parts<seen>& s)
+{
+    parts<lanes> sum{};
+    for (std::size_t k = 0; k < stretch; ++k) {
+        const double a = x.re[k], b = x.im[k];
         for (std::size_t l = 0; l < lanes; ++l) {
-            re[l] += a * s_re[l] + b * s_im[l];
-            im[l] += b * s_re[l] - a * s_im[l];
+            sum.re[l] += a * s.re[k + l] + b * s.im[k + l];
+            sum.im[l] += b * s.re[k + l] - a * s.im[k + l];
         }
     }
-    complex at(std::size_t lane) const { return {re[lane], im[lane]}; }
-};
+    return sum;
+}
 
 /// Column of the neighbour in this lane; the middle one is the symbol itself.
 constexpr std::size_t column_of(std::size_t lane)
@@ -39,6 +51,12 @@ complex product(complex a, complex b) // written out: std::complex would check f
 }
 
 } // namespace
+
+/// One stretch laid out for the sums.
+struct residual_gatherer::layout {
+    parts<seen> sent;                   // with the neighbours at both ends
+    parts<stretch> error, image, curve; // e, s*, s(|s|² − κ)
+};
 
 residual_gatherer::residual_gatherer(const signal_set& set) : d_scale(1 / std::sqrt(set.es())), d_kappa(0)
 {
@@ -91,10 +109,19 @@ residual_sums residual_gatherer::take()
 
 void residual_gatherer::close_stretch()
 {
+    layout at;
+    for (std::size_t k = 0; k < seen; ++k)
+        at.sent.set(k, d_sent[k]);
+    for (std::size_t k = 0; k < stretch; ++k) {
+        const complex s = d_sent[k + reach];
+        at.error.set(k, d_received[k + reach] - s);
+        at.image.set(k, std::conj(s));
+        at.curve.set(k, s * (std::norm(s) - d_kappa));
+    }
     d_stretch = {};
-    add_products();
+    add_products(at);
     if (d_model)
-        add_moments();
+        add_moments(at);
     d_all.merge(d_stretch);
     d_new.merge(d_stretch);
     if (d_all.symbols() >= d_next_fit) {
@@ -106,31 +133,26 @@ void residual_gatherer::close_stretch()
     draw_place();
 }
 
-void residual_gatherer::add_products()
+void residual_gatherer::add_products(const layout& at)
 {
-    std::array<double, stretch + 2 * reach> re, im;
-    for (std::size_t k = 0; k < re.size(); ++k) {
-        re[k] = d_sent[k].real();
-        im[k] = d_sent[k].imag();
-    }
-    lagged first, error, image, curve; // against s_{k−4}, e, s*, s(|s|² − κ)
-    complex sent{}, sent_curve{}, image_error{}, image_curve{}, errors{}, curves{}, curve_error{};
+    parts<stretch> first;
+    std::copy_n(at.sent.re.begin(), stretch, first.re.begin());
+    std::copy_n(at.sent.im.begin(), stretch, first.im.begin());
+    const auto of_first = correlate(first, at.sent), of_error = correlate(at.error, at.sent);
+    const auto of_image = correlate(at.image, at.sent), of_curve = correlate(at.curve, at.sent);
+    complex first_sum{}, sent{}, errors{}, curves{}, image_error{}, image_curve{}, curve_error{};
     double errors_power = 0, curve_power = 0;
     for (std::size_t k = 0; k < stretch; ++k) {
-        const complex s = d_sent[k + reach], e = d_received[k + reach] - s;
-        const complex q = s * (std::norm(s) - d_kappa);
-        first.add({re[k], im[k]}, &re[k], &im[k]);
-        error.add(e, &re[k], &im[k]);
-        image.add(std::conj(s), &re[k], &im[k]);
-        curve.add(q, &re[k], &im[k]);
+        const complex e = at.error.at(k), q = at.curve.at(k), s = at.sent.at(k + reach);
+        first_sum += at.sent.at(k);
         sent += s;
-        curves += q;
         errors += e;
+        curves += q;
         image_error += product(s, e);
         image_curve += product(s, q);
         curve_error += product(std::conj(q), e);
-        curve_power += std::norm(q);
         errors_power += std::norm(e);
+        curve_power += std::norm(q);
     }
 
     auto& sums = d_stretch;
@@ -141,7 +163,7 @@ void residual_gatherer::add_products()
     };
     // Neighbours among themselves: Σ s*_{k+i}·s_{k+j} depends on j − i but for the ends of the stretch.
     for (std::size_t apart = 0; apart < lanes; ++apart) {
-        complex sum = std::conj(first.at(apart)); // Σ s*_{k−4}·s_{k−4+apart}
+        complex sum = std::conj(of_first.at(apart));
         for (std::size_t i = 0; i + apart < lanes; ++i) {
             put(column_of(i), column_of(i + apart), sum);
             if (i + apart + 1 < lanes)
@@ -149,16 +171,13 @@ void residual_gatherer::add_products()
                        product(std::conj(d_sent[i]), d_sent[i + apart]);
         }
     }
-    complex sum{};
-    for (std::size_t k = 0; k < stretch; ++k)
-        sum += d_sent[k];
     for (std::size_t i = 0; i < lanes; ++i) {
-        put(column::offset, column_of(i), sum);
+        put(column::offset, column_of(i), first_sum);
         if (i + 1 < lanes)
-            sum += d_sent[stretch + i] - d_sent[i];
-        put(column_of(i), column::image, image.at(i));
-        put(column_of(i), column::compression, curve.at(i));
-        put(column_of(i), e, error.at(i));
+            first_sum += d_sent[stretch + i] - d_sent[i];
+        put(column_of(i), column::image, of_image.at(i));
+        put(column_of(i), column::compression, of_curve.at(i));
+        put(column_of(i), e, of_error.at(i));
     }
     put(column::offset, column::offset, static_cast<double>(stretch));
     put(column::offset, column::image, std::conj(sent));
@@ -173,38 +192,42 @@ void residual_gatherer::add_products()
     sums.d_symbols = stretch;
 }
 
-void residual_gatherer::add_moments()
+void residual_gatherer::add_moments(const layout& at)
 {
     const auto& beta = d_model->value;
-    const complex gain = 1.0 + beta[column::gain];
-    const complex turn = std::conj(gain) / std::abs(gain);
-    std::array<complex, lanes> taps;
+    auto left = at.error;
+    const auto take_off = [&](complex c, const double* re, const double* im) {
+        const double a = c.real(), b = c.imag();
+        if (a == 0 && b == 0)
+            return;
+        for (std::size_t k = 0; k < stretch; ++k) {
+            left.re[k] -= a * re[k] - b * im[k];
+            left.im[k] -= a * im[k] + b * re[k];
+        }
+    };
     for (std::size_t l = 0; l < lanes; ++l)
-        taps[l] = beta[column_of(l)];
+        take_off(beta[column_of(l)], &at.sent.re[l], &at.sent.im[l]);
+    take_off(beta[column::image], at.image.re.data(), at.image.im.data());
+    take_off(beta[column::compression], at.curve.re.data(), at.curve.im.data());
 
-    auto& m = d_stretch.moments;
+    const complex gain = 1.0 + beta[column::gain], offset = beta[column::offset];
+    const complex turn = std::conj(gain) / std::abs(gain);
+    residual_moments m;
     complex before{}, gained{};
-    double sent_power = 0, block_power = 0;
+    double sent_power = 0, sent_fourth = 0, block_power = 0;
     for (std::size_t k = 0; k < stretch; ++k) {
-        const complex s = d_sent[k + reach];
-        complex x = d_received[k + reach] - s - beta[column::offset] -
-                    product(beta[column::image], std::conj(s)) -
-                    product(beta[column::compression], s * (std::norm(s) - d_kappa));
-        for (std::size_t l = 0; l < lanes; ++l)
-            x -= product(taps[l], d_sent[k + l]);
-        m.square += product(x, x);
-        x = product(x, turn);
-        const complex along = product(x, std::conj(s)), square = product(along, along);
-        const double power = std::norm(x);
+        const complex s = at.sent.at(k + reach), x = left.at(k) - offset;
+        const complex along = product(product(x, turn), std::conj(s)), square = product(along, along);
+        const double power = std::norm(x), sent = std::norm(s);
         m.power += power;
         m.fourth += power * power;
+        m.square += product(x, x);
         m.turned += square;
-        m.turned_norm += std::norm(square);
-        m.signal_fourth += std::norm(gain) * std::norm(s) * std::norm(s);
-        sent_power += std::norm(s);
+        m.turned_norm += power * power * sent * sent;
+        sent_power += sent;
+        sent_fourth += sent * sent;
         gained += along;
-        if (k > 0)
-            m.lag_one += product(x, std::conj(before));
+        m.lag_one += product(x, std::conj(before));
         before = x;
         block_power += power;
         if (k % block == block - 1) {
@@ -213,6 +236,7 @@ void residual_gatherer::add_moments()
         }
     }
     m.symbols = stretch;
+    m.signal_fourth = std::norm(gain) * sent_fourth;
     m.pairs = stretch - 1;
     m.blocks = stretch / block;
     if (sent_power > 0) {
@@ -223,6 +247,7 @@ void residual_gatherer::add_moments()
         m.radial_gain = gained.real() * gained.real() / whole;
         m.tangential_gain = gained.imag() * gained.imag() / whole;
     }
+    d_stretch.moments = m;
 }
 
 } // namespace halfplane
