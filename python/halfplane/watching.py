@@ -10,7 +10,7 @@ from rich.text import Text
 from . import live
 from .cli import shown
 from .views import glance, words
-from .views.losses import REST, parts
+from .views.losses import REST, parts, whole
 
 WIDEST = 110
 _STYLES = {"good": shown.GOOD, "bad": shown.BAD, "open": shown.WARN, "quiet": shown.QUIET}
@@ -69,7 +69,7 @@ def _losses(report: dict, width: int) -> Table | None:
         bar = ("░" if cause in REST else "█") * max(0, round(room * abs(db) / largest))
         table.add_row(words.name(cause), f"{db:+.2f}", Text(bar, style="cyan"))
     if total is not None:
-        table.add_row(Text("at the input in all", style=shown.STRONG), Text(shown.db(total), style=shown.STRONG), "")
+        table.add_row(Text(whole(report), style=shown.STRONG), Text(shown.db(total), style=shown.STRONG), "")
     return table
 
 

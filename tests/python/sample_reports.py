@@ -70,10 +70,15 @@ def full():
     total["nonfinite"] = 3
     total["in"] += 21_503
     total["slips"] = 1
+    total.update(
+        frames=400, frame_errors=12, fer=0.03, fer_low=0.0156, fer_high=0.0518,
+        frames_excluded={"before_lock": 1, "slip": 1, "signal_lost": 2, "overflow": 20, "nonfinite": 1},
+    )  # fmt: skip
     report.update(
         losses=[
             {"cause": "echo", "power_db": -28.0, "cost_db": 0.08}, {"cause": "phase_noise", "power_db": -31.0, "cost_db": 0.06},
-            {"cause": "iq_imbalance", "power_db": -40.0, "cost_db": 0.04},
+            {"cause": "iq_imbalance", "power_db": -40.0, "cost_db": 0.04}, {"cause": "interaction", "cost_db": -0.01},
+            {"cause": "unexplained", "cost_db": 0.08},
         ],
         premises=[
             {"name": "white", "p": 1e-9, "effect_db": 0.12, "state": "fails"},
@@ -82,6 +87,7 @@ def full():
         ],
         verdict={
             "target": {"ser": 1e-3}, "state": "undecided", "log_wealth_pass": 1.2, "log_wealth_fail": -3.0, "symbols_to_go": 1_234_567,
+            "excluded_share": 0.002,
         },
         seconds={"errored": 12, "severely_errored": 1, "unavailable": 0, "available": 400},
     )  # fmt: skip

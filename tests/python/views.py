@@ -338,6 +338,7 @@ def test_heading_answers_three_questions():
     report["shortfall"]["decision"] = {"db": -0.5, "db_low": -0.6, "db_high": -0.4}
     assert said(report)[1] == ("open", "0.50 dB better than Gaussian noise")
     assert [state for state, _ in said({})] == ["quiet"] * 3
+    assert "0.20 % left out" in views.answers(sample_reports.full())[2].detail
     assert said(sample_reports.silent())[2] == ("open", "SER below 3.00·10⁻⁴, 95 % sure")
     told = views.heading(report).description
     assert all(each.answer in told and each.detail in told for each in views.answers(report))
@@ -357,23 +358,42 @@ def test_losses_add_up_to_the_shortfall_at_the_input():
     assert math.isclose(sum(db for _, db, _ in found), report["shortfall"]["input"]["db"], abs_tol=1e-12) and total == 0.25
     shown = views.losses(report)
     lengths = {bar.note.split(":")[0]: bar.width for bar in [*bars(shown, "loss"), *bars(shown, "ground"), *bars(shown, "measured_soft")]}
-    unit = lengths["shortfall at the input"] / 0.25
+    unit = lengths["at the input in all"] / 0.25
     for each in report["losses"]:
-        assert math.isclose(lengths[words.name(each["cause"])], unit * each["cost_db"], abs_tol=0.02)
-        assert f"+{each['cost_db']:.2f} dB" in shown.texts()
-    assert math.isclose(lengths["not explained"], unit * 0.07, abs_tol=0.02)
+        assert math.isclose(lengths[words.name(each["cause"])], unit * abs(each["cost_db"]), abs_tol=0.02), each
+        assert f"{each['cost_db']:+.2f} dB".replace("-", "−") in shown.texts()
     hatched = [item.note.split(":")[0] for item in shown.items if getattr(item, "hatch", False)]
     assert hatched == ["not explained"]
-    # Each bar begins where the one above it ends.
+    # Each bar begins where the one above it ends: echo, phase noise, I/Q imbalance to the right, then back, then the rest.
     row = [bar for bar in shown.items if isinstance(bar, drawing.Bar) and bar.role in ("loss", "ground")]
-    assert all(math.isclose(a.x + a.width, b.x, abs_tol=0.01) for a, b in zip(row, row[1:]))
+    ends = [row[0].x + row[0].width, row[1].x + row[1].width, row[2].x + row[2].width, row[3].x]
+    starts = [row[1].x, row[2].x, row[3].x + row[3].width, row[4].x]
+    assert len(row) == 5 and all(math.isclose(a, b, abs_tol=0.01) for a, b in zip(ends, starts))
 
 
-def test_losses_without_the_input_show_no_rest():
+def test_losses_without_the_input_add_up_over_the_noise():
     report = sample_reports.full()
     del report["shortfall"]["input"]
     shown = views.losses(report)
-    assert not any(getattr(item, "hatch", False) for item in shown.items) and "not known" in shown.description
+    assert "over the noise alone" in shown.texts() and "0.25 dB" in shown.texts() and "not known" in shown.description
+    report["losses"] = []
+    assert "Losses not known yet" in views.losses(report).description
+
+
+def test_rest_is_what_the_shortfall_leaves():
+    """Whatever a report's own rest says: the sum is the shortfall shown elsewhere."""
+    report = sample_reports.full()
+    report["losses"] = report["losses"][:2]
+    assert "+0.11 dB" in views.losses(report).texts()
+
+
+def test_left_out_counts_from_lock_on():
+    report = sample_reports.full()
+    assert words.left_out(report) == 0.002
+    del report["verdict"]
+    out = 500 + 1000 + 20_000 + 3
+    assert math.isclose(words.left_out(report), out / (out + report["total"]["judged"]))
+    assert words.left_out(sample_reports.step(12.0)) == 0.0
 
 
 def test_account_adds_up_and_says_everything():
@@ -386,6 +406,7 @@ def test_account_adds_up_and_says_everything():
         assert words.count(number) in texts
     assert "fails by 0.12 dB" in texts and "too few symbols to tell" in texts
     assert "Undecided: SER below 10⁻³, about 1.2 million symbols to go" in texts
+    assert {"400", "12", "0.0300 (0.0156 to 0.0518)", "25"} <= set(texts)
     assert any("no target was given" in text for text in views.account(sample_reports.step(12.0)).texts())
 
 

@@ -33,6 +33,7 @@ def account(report: dict, settings: dict | None = None, size: tuple[float, float
     left_end = _draw_account(out, report, _MARGIN, 8, column)
     x, y = (2 * _MARGIN + column, 8) if wide else (_MARGIN, left_end + 14)
     right_end = _draw_premises(out, report, x, y, column)
+    right_end = _draw_frames(out, report, x, right_end + 8, column)
     right_end = _draw_seconds(out, report, x, right_end + 8, column)
     end = _draw_verdict(out, report, max(left_end, right_end) + 12)
     out.height = end
@@ -90,6 +91,22 @@ def _draw_premises(out: Drawing, report: dict, x: float, y: float, room: float) 
         needed = lettering.width(said, 11.5, role == "bad")
         out.add(Text(x + room, y, said, "ink" if role == "bad" else "quiet", 11.5, "end", bold=role == "bad", note=note))
         out.add(Text(x + 17, y, lettering.shortened(words.name(each.get("name", "")), room - 27 - needed, 12), "ink", 12, note=note))
+    return y + 6
+
+
+def _draw_frames(out: Drawing, report: dict, x: float, y: float, room: float) -> float:
+    total = report["total"]
+    if "frames" not in total:
+        return y - 8
+    y = _head(out, x, y, room, "Frames")
+    lines = [("judged", words.count(total["frames"])), ("in error", words.count(total.get("frame_errors", 0)))]
+    if "fer" in total:
+        lines.append(("frame error rate", f"{words.rate(total['fer'])} ({words.interval(total.get('fer_low'), total.get('fer_high'))})"))
+    if left_out := sum(total.get("frames_excluded", {}).values()):
+        lines.append(("left out", words.count(left_out)))
+    for what, said in lines:
+        y += _ROW
+        out.add(Text(x + 17, y, lettering.shortened(what, room - 27 - lettering.width(said), 12), "ink", 12), Text(x + room, y, said, "ink", 12, "end"))
     return y + 6
 
 

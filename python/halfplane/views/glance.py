@@ -77,8 +77,7 @@ def _sure(report: dict) -> Answer:
     said, role = words.certainty(total, report.get("confidence", 0.95))
     if role == "quiet":
         return Answer(question, "quiet", said)
-    left_out = sum(total.get("excluded", {}).values())
-    share = left_out / total["in"] if total.get("in") else 0.0
+    share = words.left_out(report)
     detail = words.counted(total)
     if share > MOST_EXCLUDED:
         detail += f"; {words.percent(share)} left out"

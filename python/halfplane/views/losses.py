@@ -8,25 +8,41 @@ from .axes import LinearAxis
 from .drawing import Bar, Drawing, Line, Text
 
 SIZE = (720.0, 280.0)
-REST = ("unexplained", "rest")
+REST, TOGETHER = ("unexplained", "rest"), "interaction"
 _MARGIN, _ROW, _BAR = 14.0, 26.0, 14.0
 
 
 def parts(report: dict) -> tuple[list[tuple[str, float, str]], float | None]:
     """
-    [(cause, dB, note)] by size, the rest last, and the shortfall at the input that they add up to (None where it is not
-    known). The rest is the difference, so that the bars add up whatever the report's own rest says.
+    [(cause, dB, note)] by size, then what the causes do together, the rest last; and what they add up to: the shortfall at
+    the input. Without it the sum of all, the loss over the noise alone; None where no loss is known.
+
+    With the input the rest is the difference, so that the bars add up to the shortfall that every view shows.
     """
-    found = [
-        (each["cause"], each["cost_db"], f"power {words.db(each['power_db'], 1)} dB below Es".replace("−", "") if each.get("power_db", 1) < 0 else "")
-        for each in report.get("losses", ())
-        if each.get("cause") not in REST and "cost_db" in each
-    ]
+    known = {each["cause"]: each for each in report.get("losses", ()) if "cause" in each and "cost_db" in each}
+    found = [(cause, each["cost_db"], _power(each)) for cause, each in known.items() if cause not in (*REST, TOGETHER)]
     found.sort(key=lambda each: -each[1])
+    if TOGETHER in known:
+        found.append((TOGETHER, known[TOGETHER]["cost_db"], "what the causes cost together beyond the sum of each"))
     total = report.get("shortfall", {}).get("input", {}).get("db")
     if total is not None:
-        found.append(("unexplained", total - sum(each[1] for each in found), ""))
+        found.append((REST[0], total - sum(each[1] for each in found), ""))
+    elif known:
+        found += [(cause, known[cause]["cost_db"], "") for cause in REST if cause in known]
+        total = sum(each[1] for each in found)
     return found, total
+
+
+def _power(each: dict) -> str:
+    power = each.get("power_db")
+    if power is None:
+        return ""
+    return f"power {words.db(abs(power), 1)} dB {'below' if power < 0 else 'above'} the signal's"
+
+
+def whole(report: dict) -> str:
+    """What the bars add up to."""
+    return "at the input in all" if "db" in report.get("shortfall", {}).get("input", {}) else "over the noise alone"
 
 
 def losses(report: dict, settings: dict | None = None, size: tuple[float, float] = SIZE) -> Drawing:
@@ -42,7 +58,7 @@ def losses(report: dict, settings: dict | None = None, size: tuple[float, float]
         return out
     out.description = _description(report, found, total)
 
-    names = [words.name(cause) for cause, _, _ in found] + ["at the input in all"]
+    names = [*(words.name(cause) for cause, _, _ in found), whole(report)]
     column = min(0.42 * out.width, max(lettering.width(name, 12, True) for name in names)) + 10
     ends = _ends(found)
     values = [0.0, *(value for pair in ends for value in pair), *_of_interval(report)]
@@ -96,11 +112,12 @@ def _draw_row(out, axis, y, column, name, start, end, db, rest, note) -> None:
 
 
 def _draw_total(out, report, axis, y, column, total) -> None:
-    at = report["shortfall"]["input"]
+    at, name = report.get("shortfall", {}).get("input", {}), whole(report)
+    at = at if "db" in at else {"db": total}
     out.add(Line(((_MARGIN, y - 3), (out.width - _MARGIN, y - 3)), "rule"))
-    out.add(Text(_MARGIN, y + 12, lettering.shortened("at the input in all", column - 10, 12, True), "ink", 12, bold=True))
+    out.add(Text(_MARGIN, y + 12, lettering.shortened(name, column - 10, 12, True), "ink", 12, bold=True))
     low, high = sorted((axis(0.0), axis(total)))
-    note = f"shortfall at the input: {words.shortfall(at)}"
+    note = f"{name}: {words.shortfall(at)}"
     out.add(Bar(low, y + 1, max(1.5, high - low), _BAR, "measured_soft", "measured", note=note))
     if "db_low" in at and "db_high" in at:
         middle, (a, b) = y + 1 + _BAR / 2, (axis(at["db_low"]), axis(at["db_high"]))
@@ -112,6 +129,6 @@ def _draw_total(out, report, axis, y, column, total) -> None:
 
 def _description(report: dict, found, total) -> str:
     listed = ", ".join(f"{words.name(cause)} {words.db(db)} dB" for cause, db, _ in found)
-    if total is None:
-        return f"Loss by cause: {listed}. The Es/N0 at the input is not known, so neither is the rest."
-    return f"The shortfall at the input, {words.shortfall(report['shortfall']['input'])}, is made of: {listed}."
+    if whole(report) == "at the input in all":
+        return f"The shortfall at the input, {words.shortfall(report['shortfall']['input'])}, is made of: {listed}."
+    return f"Loss over the noise alone, {words.db(total)} dB, is made of: {listed}. The Es/N0 at the input is not known."

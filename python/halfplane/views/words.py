@@ -83,8 +83,12 @@ def factor(value: float) -> str:
 VERDICTS = ("pass", "fail", "undecided")
 PREMISE_STATES = {"holds": ("good", "holds"), "fails": ("bad", "fails"), "too_few": ("quiet", "too few symbols to tell")}
 _NAMES = {
-    "iq_imbalance": "I/Q imbalance", "imbalance": "I/Q imbalance", "gain_phase": "gain and phase", "evm": "EVM", "mer": "MER",
-    "excess_noise": "receiver noise", "unexplained": "not explained", "rest": "not explained", "coloured": "coloured noise",
+    # causes of losses
+    "iq_imbalance": "I/Q imbalance", "gain_error": "gain", "phase_error": "phase", "filter": "filter mismatch", "excess_noise": "receiver noise",
+    "interaction": "acting together", "unexplained": "not explained", "rest": "not explained",
+    # premises
+    "no_memory": "no memory of neighbours", "no_image": "no mirror image", "linear": "linear", "circular": "noise alike in all directions",
+    "gaussian": "Gaussian noise", "steady_noise": "steady noise", "steady_gain": "steady gain", "white": "white noise",
 }  # fmt: skip
 
 
@@ -142,6 +146,18 @@ def counted(total: dict) -> str:
     """'2 341 errors in 19 998 240 symbols'."""
     errors = total.get("symbol_errors", 0)
     return f"{count(errors)} error{'s' if errors != 1 else ''} in {count(total.get('symbols', 0))} symbols"
+
+
+def left_out(report: dict) -> float:
+    """
+    Share of the symbols that were left out since the first lock, not finite ones too: the verdict's own figure where there is
+    one. What came before lock says nothing against the link.
+    """
+    verdict, total = report.get("verdict", {}), report.get("total", {})
+    if "excluded_share" in verdict:
+        return verdict["excluded_share"]
+    out = total.get("nonfinite", 0) + sum(number for cause, number in total.get("excluded", {}).items() if cause != "before_lock")
+    return out / (out + total.get("judged", 0)) if out else 0.0
 
 
 def certainty(total: dict, confidence: float) -> tuple[str, str]:
