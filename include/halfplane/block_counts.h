@@ -25,6 +25,10 @@ public:
     /// `n` judged symbols in order: indices sent and decided.
     void add(const std::uint16_t* sent, const std::uint16_t* decided, std::size_t n);
 
+    /// The same for steps of any kind (bits, frames): some without an error, or one with.
+    void add_clear(std::uint64_t steps);
+    void add_error();
+
     /*!
      * Variance of the error counts over what independent symbols give (index of dispersion), the largest
      * among the block lengths at which it is significant; 1 where none is. Nothing below `least_errors`
@@ -45,7 +49,9 @@ private:
         std::uint64_t half = 0; ///< errors of a first half that waits for its second
         bool waiting = false;
     };
-    void close_block(std::uint64_t errors);
+    void add(std::uint64_t steps, std::uint64_t errors);
+    void close_block(std::uint64_t errors, std::size_t length = 0);
+    void close_clear(std::uint64_t blocks);
 
     std::array<level, lengths> d_levels{};
     std::uint64_t d_open_symbols = 0, d_open_errors = 0; ///< of the shortest block under way

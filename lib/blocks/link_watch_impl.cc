@@ -35,7 +35,10 @@ bool from_receiver(const std::string& decisions)
                                             std::uint64_t window,
                                             double confidence,
                                             double symbol_rate,
-                                            const std::string& decisions)
+                                            const std::string& decisions,
+                                            const std::string& target,
+                                            std::uint64_t frame_symbols,
+                                            double max_excluded)
 {
     ::halfplane::link::watch_options options;
     options.pattern = pattern;
@@ -51,6 +54,7 @@ bool from_receiver(const std::string& decisions)
                                   std::isfinite(symbol_rate) && symbol_rate >= 0,
                                   "a finite number ≥ 0 is wanted");
     options.receiver_decisions = from_receiver(decisions);
+    options.trial = {target, frame_symbols, max_excluded};
     return options;
 }
 
@@ -61,10 +65,13 @@ link_watch::sptr link_watch::make(const ::halfplane::signal_set& set,
                                   std::uint64_t window,
                                   double confidence,
                                   double symbol_rate,
-                                  const std::string& decisions)
+                                  const std::string& decisions,
+                                  const std::string& target,
+                                  std::uint64_t frame_symbols,
+                                  double max_excluded)
 {
     return gnuradio::make_block_sptr<link_watch_impl>(
-        set, pattern, window, confidence, symbol_rate, decisions);
+        set, pattern, window, confidence, symbol_rate, decisions, target, frame_symbols, max_excluded);
 }
 
 link_watch_impl::link_watch_impl(const ::halfplane::signal_set& set,
@@ -72,16 +79,21 @@ link_watch_impl::link_watch_impl(const ::halfplane::signal_set& set,
                                  std::uint64_t window,
                                  double confidence,
                                  double symbol_rate,
-                                 const std::string& decisions)
+                                 const std::string& decisions,
+                                 const std::string& target,
+                                 std::uint64_t frame_symbols,
+                                 double max_excluded)
     : gr::sync_block(
           "link_watch",
           from_receiver(decisions)
               ? gr::io_signature::make3(3, 3, sizeof(gr_complex), sizeof(reference_t), sizeof(std::int16_t))
               : gr::io_signature::make2(2, 2, sizeof(gr_complex), sizeof(reference_t)),
           gr::io_signature::make(0, 0, 0)),
-      d_reporter(set,
-                 options_of(pattern, window, confidence, symbol_rate, decisions),
-                 {0.1, [this](const ::halfplane::link::report& made) { publish(made); }})
+      d_reporter(
+          set,
+          options_of(
+              pattern, window, confidence, symbol_rate, decisions, target, frame_symbols, max_excluded),
+          {0.1, [this](const ::halfplane::link::report& made) { publish(made); }})
 {
     d_settings = json_to_pmt(d_reporter.settings());
     message_port_register_out(report_port());

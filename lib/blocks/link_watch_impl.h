@@ -18,7 +18,10 @@ public:
                     std::uint64_t window,
                     double confidence,
                     double symbol_rate,
-                    const std::string& decisions);
+                    const std::string& decisions,
+                    const std::string& target,
+                    std::uint64_t frame_symbols,
+                    double max_excluded);
     ~link_watch_impl() override;
 
     std::string report() const override;

@@ -12,23 +12,45 @@ void block_counts::add(const std::uint16_t* sent, const std::uint16_t* decided, 
 {
     for (std::size_t k = 0; k < n;) {
         const std::size_t end = k + std::min<std::size_t>(n - k, shortest - d_open_symbols);
-        d_open_symbols += end - k;
+        const std::size_t steps = end - k;
         std::uint64_t errors = 0;
         for (; k < end; ++k)
             errors += sent[k] != decided[k];
-        d_open_errors += errors;
-        d_errors += errors;
-        if (d_open_symbols == shortest) {
-            close_block(d_open_errors);
-            d_open_symbols = d_open_errors = 0;
-        }
+        add(steps, errors);
     }
 }
 
-/// Two blocks of one length make one of the next, so a level costs half of the level below.
-void block_counts::close_block(std::uint64_t errors)
+/// No more steps than the block under way has room for.
+void block_counts::add(std::uint64_t steps, std::uint64_t errors)
 {
-    for (auto& l : d_levels) {
+    d_open_symbols += steps;
+    d_open_errors += errors;
+    d_errors += errors;
+    if (d_open_symbols == shortest) {
+        close_block(d_open_errors);
+        d_open_symbols = d_open_errors = 0;
+    }
+}
+
+void block_counts::add_clear(std::uint64_t steps)
+{
+    const auto first = std::min<std::uint64_t>(steps, shortest - d_open_symbols);
+    add(first, 0);
+    steps -= first;
+    close_clear(steps / shortest);
+    add(steps % shortest, 0);
+}
+
+void block_counts::add_error()
+{
+    add(1, 1);
+}
+
+/// Two blocks of one length make one of the next, so a level costs half of the level below.
+void block_counts::close_block(std::uint64_t errors, std::size_t length)
+{
+    for (; length < lengths; ++length) {
+        auto& l = d_levels[length];
         ++l.blocks;
         l.errors += errors;
         l.squares += static_cast<long double>(errors) * static_cast<long double>(errors);
@@ -38,6 +60,25 @@ void block_counts::close_block(std::uint64_t errors)
             return;
         }
         errors += l.half;
+    }
+}
+
+/// Any number of blocks without errors at once.
+void block_counts::close_clear(std::uint64_t blocks)
+{
+    for (std::size_t length = 0; length < lengths && blocks > 0; ++length) {
+        auto& l = d_levels[length];
+        l.blocks += blocks;
+        if (l.waiting) {
+            l.waiting = false;
+            --blocks;
+            close_block(l.half, length + 1);
+        }
+        if (blocks % 2 == 1) {
+            l.waiting = true;
+            l.half = 0;
+        }
+        blocks /= 2;
     }
 }
 

@@ -70,6 +70,12 @@ interval run_intervals::ber(const tally& counts) const
     return clumped_interval(counts.bit_errors, counts.bits, clumping, confidence);
 }
 
+interval run_intervals::fer(std::uint64_t errors, std::uint64_t frames) const
+{
+    return frame_dispersion > 1 ? clumped_interval(errors, frames, frame_dispersion, confidence)
+                                : binomial_interval(errors, frames, confidence);
+}
+
 /// Keys in alphabetic order, no spaces, doubles by their shortest text: anyone can form the digest again.
 nlohmann::json settings_of(const signal_set& set, const predictor& p, const watch_options& options)
 {
@@ -91,6 +97,15 @@ nlohmann::json settings_of(const signal_set& set, const predictor& p, const watc
         s["symbol_rate"] = options.symbol_rate;
     if (!options.explain)
         s["explain"] = false;
+    const auto& trial = options.trial;
+    if (trial.frame_symbols > 0)
+        s["frame_symbols"] = trial.frame_symbols;
+    if (!trial.target.empty()) {
+        s["target"] = trial.target;
+        s["max_excluded"] = trial.max_excluded;
+        if (trial.dependence > 0)
+            s["dependence"] = trial.dependence;
+    }
     return s;
 }
 
@@ -238,6 +253,47 @@ report counts_and_gauge(const signal_set& set,
         out["offset_db"] = to_db(o2 / (g2 * set.es()));
     out["evm_rms"] = fit->evm_rms;
     out["mer_db"] = fit->mer_db;
+    return out;
+}
+
+report frames_of(const trial_state& now, const frame_counts& before, const run_intervals& ends)
+{
+    report out = report::object();
+    if (now.frames.length() == 0)
+        return out;
+    const auto frames = now.frames.frames - before.frames,
+               errors = now.frames.frame_errors - before.frame_errors;
+    out["frames"] = frames;
+    out["frame_errors"] = errors;
+    if (frames > 0)
+        put_interval(
+            out, "fer", static_cast<double>(errors) / static_cast<double>(frames), ends.fer(errors, frames));
+    static constexpr const char* causes[] = {"before_lock", "slip", "signal_lost", "overflow", "nonfinite"};
+    for (std::size_t k = 0; k < frame_counts::causes; ++k)
+        out["frames_excluded"][causes[k]] = now.frames.excluded[k] - before.excluded[k];
+    return out;
+}
+
+report verdict_of(const trial_state& trial, const tally& counts)
+{
+    const auto target = *trial.target;
+    const auto& bets = *trial.bets;
+    const bool by_frame = target.kind == error_kind::fer;
+    const auto before_lock = static_cast<std::size_t>(-1 - code(exclusion::before_lock));
+    const auto excluded = by_frame ? trial.frames.all_excluded()
+                                   : counts.accounted() - counts.symbols - counts.excluded[before_lock];
+    const auto now = bets.look(excluded);
+    report out = {{"target", {{to_string(target.kind), target.rate}}}, {"state", to_string(now.state)}};
+    if (now.log_wealth_pass)
+        out["log_wealth_pass"] = *now.log_wealth_pass;
+    if (now.log_wealth_fail)
+        out["log_wealth_fail"] = *now.log_wealth_fail;
+    if (now.block > 0)
+        out["block"] = now.block;
+    if (const auto all = bets.steps() + excluded; all > 0)
+        out["excluded_share"] = static_cast<double>(excluded) / static_cast<double>(all);
+    if (const auto steps = bets.steps_to_go(excluded))
+        out["symbols_to_go"] = by_frame ? *steps * trial.frames.length() : *steps;
     return out;
 }
 

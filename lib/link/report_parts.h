@@ -23,8 +23,10 @@ inline constexpr std::size_t most_transitions = 4096;
 struct run_intervals {
     double dispersion = 1; ///< of error counts over blocks
     double confidence;
+    double frame_dispersion = 1; ///< of frame errors
     interval ser(std::uint64_t errors, std::uint64_t symbols) const;
     interval ber(const tally& counts) const;
+    interval fer(std::uint64_t errors, std::uint64_t frames) const;
 };
 
 std::string utc_now(); ///< RFC 3339, whole seconds
@@ -48,5 +50,10 @@ report lock_of(const lock_status& lock);
 report losses_of(const std::vector<loss>& losses);
 report premises_of(const std::vector<premise>& premises);
 report seconds_of(const second_counts& s);
+/// Frames of `now`, of those since `before` where there is one; nothing where none are counted.
+report frames_of(const trial_state& now, const frame_counts& before, const run_intervals& ends);
+/// \param counts of the run. Symbols before the lock are no excluded ones here: nothing was claimed of them
+/// yet.
+report verdict_of(const trial_state& trial, const tally& counts);
 
 } // namespace halfplane::link

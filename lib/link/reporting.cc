@@ -128,8 +128,11 @@ report watch::reporting::total(const window& w,
     out.update(account);
     if (d_lock)
         out["slips"] = d_lock->slips;
+    out.update(frames_of(w.trial, frame_counts(), ends));
     if (const auto d = w.blocks.dispersion())
         out["dispersion"] = *d;
+    if (const auto d = w.trial.frame_blocks.dispersion())
+        out["frame_dispersion"] = *d;
     if (d_counts.bit_errors > 0)
         out["bit_dispersion"] = d_counts.bit_dispersion();
     const auto expected = prediction_of_run();
@@ -175,7 +178,9 @@ report watch::reporting::report_of(window&& w, bool final)
     add_prediction(w);
     add_stretch(w);
     add_input(w);
-    const run_intervals ends{w.blocks.dispersion().value_or(1), d_options.confidence};
+    const run_intervals ends{w.blocks.dispersion().value_or(1),
+                             d_options.confidence,
+                             w.trial.frame_blocks.dispersion().value_or(1)};
 
     report out;
     out["schema"] = "halfplane/report/1";
@@ -197,6 +202,8 @@ report watch::reporting::report_of(window&& w, bool final)
     const auto fit = w.fit.solve(d_set);
     report window_part = {{"first_symbol", w.first_symbol}};
     window_part.update(counts_and_gauge(d_set, w.counts, fit, ends));
+    window_part.update(frames_of(w.trial, d_frames, ends));
+    d_frames = w.trial.frames;
     if (fit)
         window_part["predicted"] = rates_of(rates_at(fit->es_n0));
     out["window"] = std::move(window_part);
@@ -224,6 +231,8 @@ report watch::reporting::report_of(window&& w, bool final)
         out["lock"] = lock_of(*d_lock);
     if (w.seconds.all() > 0)
         out["seconds"] = seconds_of(w.seconds);
+    if (w.trial.bets)
+        out["verdict"] = verdict_of(w.trial, d_counts);
     return out;
 }
 

@@ -46,6 +46,7 @@ private:
     std::uint64_t d_sequence = 0;
     tally d_counts;
     gauge d_fit;
+    frame_counts d_frames;
     std::optional<lock_status> d_lock;
     std::optional<input_snr> d_input;
 

@@ -52,6 +52,7 @@ void watch::window::merge(window&& later)
     residuals.merge(later.residuals);
     blocks = later.blocks;
     seconds = later.seconds;
+    trial = std::move(later.trial);
     pending = later.pending;
     if (later.lock)
         lock = later.lock;
@@ -69,7 +70,7 @@ void watch::window::merge(window&& later)
 struct watch::counting {
     counting(const signal_set& s, const watch_options& o)
         : set(s), receiver_decisions(o.receiver_decisions), window_length(o.window), open(s),
-          seconds(o.symbol_rate)
+          seconds(o.symbol_rate), on_trial(s, o.trial, o.confidence)
     {
         map = o.rule == detector::map || (o.rule == detector::automatic && !s.uniform());
         if (!receiver_decisions)
@@ -106,6 +107,7 @@ struct watch::counting {
     std::uint64_t in_window = 0, handed = 0, pending = 0;
     block_counts blocks;
     second_clock seconds;
+    trial on_trial;
     std::optional<lock_status> lock;
     std::optional<input_snr> input, next_input; // the next takes effect with the next symbol
 };
@@ -149,10 +151,13 @@ void watch::counting::take(const std::complex<float>* in,
     bool plain = true;
     for (std::size_t k = 0; k < n; ++k)
         plain &= reference[k] >= 0 && reference[k] < size && decided[k] != point_decider::nonfinite;
-    if (plain)
-        judge(in, reinterpret_cast<const std::uint16_t*>(reference), decided.data(), n);
-    else
+    if (plain) {
+        const auto* sent = reinterpret_cast<const std::uint16_t*>(reference);
+        judge(in, sent, decided.data(), n);
+        on_trial.judged(sent, decided.data(), n);
+    } else {
         take_with_exclusions(in, reference, decided.data(), n);
+    }
     if (residuals)
         residuals->add(in, reference, n);
 }
@@ -178,11 +183,15 @@ void watch::counting::take_with_exclusions(const std::complex<float>* in,
     for (std::size_t k = 0; k < n; ++k) {
         if (reference[k] < 0) {
             open.counts.count_excluded(static_cast<exclusion>(reference[k]));
+            on_trial.left_out(static_cast<std::size_t>(-1 - reference[k]));
         } else if (decided[k] == point_decider::nonfinite) {
             open.counts.count_nonfinite();
+            on_trial.left_out(trial::nonfinite);
         } else {
+            const auto sent_index = static_cast<std::uint16_t>(reference[k]);
+            on_trial.judged(&sent_index, &decided[k], 1);
             samples[judged] = in[k];
-            sent[judged] = static_cast<std::uint16_t>(reference[k]);
+            sent[judged] = sent_index;
             taken[judged++] = decided[k];
         }
     }
@@ -203,6 +212,7 @@ void watch::counting::close(const window_handler& on_window)
 {
     open.blocks = blocks;
     open.seconds = seconds.counts();
+    open.trial = on_trial.state();
     open.lock = lock;
     open.pending = pending;
     if (residuals)

@@ -7,7 +7,7 @@ import json
 import numpy as np
 import pytest
 from gnuradio import halfplane
-from scipy import stats
+from scipy import optimize, stats
 
 from bench import FILL, FIRN, SAMPLES_PER_SYMBOL, assert_account_adds_up, counted, pulse_taps, run_link
 
@@ -86,6 +86,27 @@ def test_settings_travel_with_each_message_and_stand_once_in_the_log(tmp_path):
     assert message.pop("settings") == settings and message == reports[0]
 
 
+@pytest.mark.parametrize("target, state", [("ser:0.05", "pass"), ("ser:0.002", "fail"), ("ber:0.02", "pass"), ("fer:0.5", "pass")])
+def test_verdict_in_the_report(target, state):
+    """A link at SER 0.01, looked at from above and below; frames of ten symbols."""
+    from gnuradio import blocks, gr
+
+    which = halfplane.load_set(FIRN)
+    predictor = halfplane.predictor(which)
+    db = optimize.brentq(lambda db: predictor.ser(db) - 0.01, 5, 25)
+    graph = gr.top_block()
+    watch = halfplane.link_watch(which, "draw:1", 10000, target=target, frame_symbols=10)
+    source, noise = halfplane.test_pattern(which, "draw:1"), halfplane.noise_at(which, db, 1.0, 5)
+    head = blocks.head(gr.sizeof_short, 200000)
+    graph.connect(source, head, halfplane.point_mapper(which), noise, watch)
+    graph.connect(head, (watch, 1))
+    graph.run()
+    report = json.loads(watch.report())
+    assert report["verdict"]["state"] == state, report["verdict"]
+    total = report["total"]
+    assert total["frames"] == 20000 and total["fer_low"] < -np.expm1(10 * np.log1p(-0.01)) < total["fer_high"]
+
+
 def test_window_closes_and_the_last_one_is_counted():
     which = halfplane.load_set("psk:4")
     report, _, reference = run_link(which, 20.0, 12345, window=5000)
@@ -126,6 +147,8 @@ def test_the_receivers_own_decisions_are_counted():
     (lambda s: halfplane.link_watch(s, "", 10, float("nan")), "link_watch: confidence is nan"),
     (lambda s: halfplane.link_watch(s, "", 10, 0.9, -1.0), "link_watch: symbol_rate is -1"),
     (lambda s: halfplane.link_watch(s, "", 10, 0.9, 0.0, "mine"), "link_watch: decisions is 'mine'"),
+    (lambda s: halfplane.link_watch(s, "", target="fer:0.1"), "target is 'fer:0.1', but frame_symbols is 0"),
+    (lambda s: halfplane.link_watch(s, "", target="0.1"), "target is '0.1'; ser:RATE"),
     (lambda s: halfplane.aligner(s, "draw:1", "none"), "aligner: correction is 'none'"),
     (lambda s: halfplane.aligner(s, "draw:1", "running", 15), "aligner: memory is 15"),
     (lambda s: halfplane.aligner(s, "draw:1", "running", 100, float("inf")), "aligner: symbol_rate is inf"),

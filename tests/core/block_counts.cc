@@ -90,3 +90,20 @@ TEST(BlockCounts, OpenBelowTwentyErrorsOrSixteenBlocks)
     EXPECT_FALSE(fifteen.dispersion());
     EXPECT_EQ(sixteen.dispersion(), 1) << "all in error: no block differs from another";
 }
+
+TEST(BlockCounts, StepsInRunsEqualSymbolsOneByOne)
+{
+    std::mt19937_64 random(8);
+    block_counts runs, symbols;
+    for (int k = 0; k < 400; ++k) {
+        const auto clear = random() % (k % 10 == 0 ? 40000 : 90);
+        const std::vector<std::uint16_t> sent(clear + 1, 0);
+        auto decided = sent;
+        decided.back() = 1;
+        symbols.add(sent.data(), decided.data(), sent.size());
+        runs.add_clear(clear);
+        runs.add_error();
+        ASSERT_EQ(runs.dispersion(), symbols.dispersion()) << k;
+    }
+    EXPECT_GT(*runs.dispersion(), 1); // long gaps among short ones: the comparison is of something
+}

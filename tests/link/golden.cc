@@ -71,6 +71,10 @@ void replay(const std::string& name, std::size_t piece)
     options.confidence = golden["options"]["confidence"];
     options.window = golden["options"]["window"];
     options.symbol_rate = golden["options"]["symbol_rate"];
+    options.trial = {golden["options"]["target"],
+                     golden["options"]["frame_symbols"],
+                     golden["options"]["max_excluded"],
+                     golden["options"]["dependence"]};
     options.clock = [&] { return golden["options"]["clock"].get<std::string>(); };
     watch measured(set, options);
 

@@ -38,14 +38,20 @@ public:
      * \param confidence  of the intervals, inside (0, 1)
      * \param symbol_rate in Hz; 0 where unknown
      * \param decisions   `own` (nearest point, or MAP where priors differ) or `receiver` (a third input)
-     * \throws std::invalid_argument naming parameter and value
+     * \param target      what the verdict is about: "ser:1e-3", "ber:1e-5", "fer:1e-2"; empty: no verdict
+     * \param frame_symbols symbols of a frame, at most 2^32; 0: no frames are counted. The first frame begins
+     * with the first symbol that is judged \param max_excluded share of symbols (frames) left out beyond
+     * which nothing passes, in 0 … 1 \throws std::invalid_argument naming parameter and value
      */
     static sptr make(const ::halfplane::signal_set& set,
                      const std::string& pattern,
                      std::uint64_t window = 10000,
                      double confidence = 0.95,
                      double symbol_rate = 0,
-                     const std::string& decisions = "own");
+                     const std::string& decisions = "own",
+                     const std::string& target = "",
+                     std::uint64_t frame_symbols = 0,
+                     double max_excluded = 1e-3);
 
     /// The latest report as JSON text; empty before the first. The final one after top_block.wait().
     virtual std::string report() const = 0;

@@ -5,6 +5,7 @@
 #include "halfplane/block_counts.h"
 #include "halfplane/gauge.h"
 #include "halfplane/link/aligner.h"
+#include "halfplane/link/trial.h"
 #include "halfplane/rates.h"
 #include "halfplane/residuals.h"
 #include "halfplane/second_counts.h"
@@ -42,6 +43,7 @@ struct watch_options {
     double symbol_rate = 0;          ///< Hz; 0 where unknown; below 1 there are no `seconds`
     std::uint64_t window = 10000;    ///< symbols handed in, judged or not, after which a window closes; ≥ 1
     bool explain = true;             ///< gather what losses and premises are made of
+    trial_options trial;             ///< frames, and the target of the verdict
     std::function<std::string()> clock; ///< UTC, RFC 3339; the system's clock where empty
 };
 
@@ -65,7 +67,8 @@ public:
         residual_sums residuals; ///< empty unless `explain`
         block_counts blocks;     ///< of the run up to the window's end
         second_counts
-            seconds; ///< of the run up to the window's end, complete ones; none without a symbol rate
+            seconds;       ///< of the run up to the window's end, complete ones; none without a symbol rate
+        trial_state trial; ///< of the run up to the window's end
         std::optional<lock_status> lock;
         std::uint64_t pending = 0;
         /// Judged symbols and their errors by what was known of the input meanwhile.

@@ -91,6 +91,9 @@ def sha256_of_settings(case):
                 "window": case["window"]}
     if case.get("symbol_rate"):
         settings["symbol_rate"] = float(case["symbol_rate"])
+    settings |= {"frame_symbols": case["frame"], "target": case["target"], "max_excluded": MAX_EXCLUDED}
+    if case.get("dependence"):
+        settings["dependence"] = case["dependence"]
     return hashlib.sha256(json.dumps(settings, sort_keys=True, separators=(",", ":")).encode()).hexdigest()
 
 
@@ -180,6 +183,66 @@ def counts(sums, conf):
     return out
 
 
+MAX_EXCLUDED = 0.001
+CAUSES = ["before_lock", "slip", "signal_lost", "overflow", "nonfinite"]
+
+
+def frames(rows, length, begin, end, conf):
+    """
+    Frames that end behind place `begin` and not behind `end`; rows are None before the first judged symbol, True or False
+    (in error or not) where judged, else the cause.
+    """
+    first = next((k for k, row in enumerate(rows) if isinstance(row, bool)), len(rows))
+    n = errors = 0
+    excluded = dict.fromkeys(CAUSES, 0)
+    for k in range(first, end - length + 1, length):
+        if k + length <= begin:
+            continue
+        frame = rows[k:k + length]
+        causes = [row for row in frame if not isinstance(row, bool)]
+        if causes:
+            excluded[causes[0]] += 1
+        else:
+            n, errors = n + 1, errors + any(frame)
+    out = {"frames": n, "frame_errors": errors}
+    if n:
+        low, high = binomial(errors, n, conf)
+        out |= {"fer": errors / n} | ({} if low is None else {"fer_low": low}) | {"fer_high": high}
+    return out | {"frames_excluded": excluded}
+
+
+def verdict(target, steps, excluded, dependence, conf):
+    """
+    Of a run with no error or with too few blocks to bet on. Without an error the wealth against "at or above p" is a mixture
+    of (1 + λp)^blocks: over lengths dependence·2^j with weights 0.8·0.2^j, what is left being 1, and over λ, 0.99/(1 − p) with
+    weight 0.8 and its halves down to 2^−7 with 0.2/7 each; against "at or below p" of (1 − λp)^blocks, λ = 0.99/p and its
+    halves down to the first below 0.1, with equal weights.
+    """
+    kind, rate = target.split(":")
+    p = mpf(rate)
+    out = {"target": {kind: p}, "state": "undecided"}
+    if steps // dependence >= 16:
+        wealth = {}
+        for name, bets in (("pass", [(mpf("0.8") if k == 0 else mpf("0.2") / 7, mpf("0.99") / (1 - p) / 2**k) for k in range(8)]),
+                           ("fail", None)):
+            if bets is None:
+                each = [mpf("0.99") / p]
+                while each[-1] / 2 > mpf("0.1"):
+                    each.append(each[-1] / 2)
+                bets = [(mpf(1) / len(each), -bet) for bet in each]
+            total, weight, length = mpf(0), mpf("0.8"), dependence
+            while steps // length:
+                total += weight * sum(w * (1 + bet * p)**(steps // length) for w, bet in bets)
+                weight, length = weight / 5, 2 * length
+            wealth[name] = total + weight / mpf("0.8")
+        out |= {"log_wealth_pass": log(wealth["pass"]), "log_wealth_fail": log(wealth["fail"]), "block": dependence}
+        assert excluded == 0
+        if wealth["pass"] >= 2 / (1 - mpf(str(conf))):
+            out["state"] = "pass"
+    out["excluded_share"] = mpf(excluded) / (steps + excluded)
+    return out
+
+
 def named(rates):
     return {rung: {"ser": ser, "ber": ber} for rung, (ser, ber) in rates.items()}
 
@@ -224,17 +287,20 @@ def derive(case):
     s, conf, stream, size = case["set"], case["confidence"], case["stream"], case["window"]
     causes = ["before_lock", "slip", "signal_lost", "overflow"]
     reports, judged_all, nonfinite, excluded = [], [], 0, [0] * 4
-    stretches, carry = [], []
+    stretches, carry, rows = [], [], []
     starts = list(range(0, len(stream), size))
     for sequence, start in enumerate(starts):
         judged = []
         for i, q_, ref in stream[start:start + size]:
             if ref < 0:
                 excluded[-1 - ref] += 1
+                rows.append(CAUSES[-1 - ref])
             elif not (math.isfinite(i) and math.isfinite(q_)):
                 nonfinite += 1
+                rows.append("nonfinite")
             else:
                 judged.append(((i, q_), ref, s.decide(i, q_)))
+                rows.append(ref != s.decide(i, q_))
         judged_all += judged
         window, total = Sums(s, judged), Sums(s, judged_all)
         # A window that cannot be gauged is predicted together with the next that can; until then, at the run's gauge.
@@ -250,10 +316,11 @@ def derive(case):
                   "sequence": sequence, "set": s.name, "pattern": case["pattern"], "law": "awgn", "detector": "ml",
                   "decisions": "own", "confidence": conf}
         report["window"] = {"first_symbol": start} | counts(window, conf)
+        handed = min(start + size, len(stream))
+        report["window"] |= frames(rows, case["frame"], start, handed, conf)
         if window.fit():
             report["window"]["predicted"] = named(s.rates(window.fit()["snr"]))
-        handed = min(start + size, len(stream))
-        t = counts(total, conf)
+        t = counts(total, conf) | frames(rows, case["frame"], 0, handed, conf)
         t |= {"in": handed + case["pending"], "judged": total.n, "pending": case["pending"], "nonfinite": nonfinite,
               "excluded": dict(zip(causes, excluded)), "slips": case["lock"]["slips"]}
         if case.get("symbol_rate"):
@@ -289,6 +356,10 @@ def derive(case):
         if shortfall:
             report["shortfall"] = shortfall
         report["lock"] = {k: v for k, v in case["lock"].items() if k != "slips"}
+        by_frame = case["target"].startswith("fer")
+        left_out = sum(t["frames_excluded"].values()) if by_frame else nonfinite + sum(excluded[1:])
+        dependence = case.get("dependence") or (1 if by_frame else 256 // len(s.labels[0]))
+        report["verdict"] = verdict(case["target"], t["frames"] if by_frame else total.n, left_out, dependence, conf)
         reports.append(report)
     return reports
 
@@ -348,15 +419,18 @@ def slip():
 LOCK = {"state": "held", "delay": 17, "rotation_deg": 90.0, "mirrored": False, "inverted": False, "frequency": 1.25e-05}
 CASES = {
     "clean": {"set": Qpsk, "stream": clean(), "window": 24, "confidence": 0.95, "pattern": "draw:7:4096", "symbol_rate": 1000,
-              "pending": 6, "lock": LOCK | {"slips": 0},
+              "frame": 5, "target": "ser:0.2", "dependence": 1, "pending": 6, "lock": LOCK | {"slips": 0},
               "input": {"es_n0_db": 12.0, "es_n0_db_se": 0.0, "source": "declared"}},
-    "gap": {"set": Qpsk, "stream": gap(), "window": 20, "confidence": 0.95, "pattern": "o150:9", "pending": 0,
+    "gap": {"set": Qpsk, "stream": gap(), "window": 20, "confidence": 0.95, "pattern": "o150:9", "pending": 0, "frame": 4, "target": "fer:0.5",
             "lock": LOCK | {"slips": 0, "mirrored": True, "delay": 0, "rotation_deg": 0.0},
             "input": {"es_n0_db": 9.5, "es_n0_db_se": 0.0, "source": "declared"}},
-    "slip": {"set": Line3, "stream": slip(), "window": 10, "confidence": 0.9, "pattern": "file:sent.txt", "pending": 9,
+    "slip": {"set": Line3, "stream": slip(), "window": 10, "confidence": 0.9, "pattern": "file:sent.txt", "pending": 9, "frame": 3, "target": "ber:0.3",
              "lock": LOCK | {"slips": 1, "inverted": True},
              "input": {"es_n0_db": 6.0, "es_n0_db_se": 0.25, "source": "measured"}},
 }
+
+# By hand, at the end of the stream: frames, in error, excluded by cause.
+FRAMES_BY_HAND = {"clean": (4, 0, [0, 0, 0, 0, 0]), "gap": (10, 5, [0, 0, 0, 0, 0]), "slip": (5, 3, [0, 2, 2, 0, 1])}
 
 # Counted by hand from the streams (README.md): symbols, symbol errors, bit errors, nonfinite, excluded, in, by bit, transitions.
 BY_HAND = {
@@ -383,12 +457,14 @@ def main():
         seen = (t["symbols"], t["symbol_errors"], t["bit_errors"], t["nonfinite"], list(t["excluded"].values()), t["in"], t["by_bit"],
                 [row[:3] for row in t["transitions"]])
         assert seen == BY_HAND[name], (name, seen)
+        assert (t["frames"], t["frame_errors"], list(t["frames_excluded"].values())) == FRAMES_BY_HAND[name], name
         s = case["set"]
         number = lambda x: x if math.isfinite(x) else str(x)
         document = {"what": globals()[name].__doc__,
                     "set": {"name": s.name, "points": s.points, "labels": s.labels},
                     "options": {"pattern": case["pattern"], "confidence": case["confidence"], "window": case["window"],
-                                "symbol_rate": case.get("symbol_rate", 0), "clock": CLOCK},
+                                "symbol_rate": case.get("symbol_rate", 0), "clock": CLOCK, "target": case["target"],
+                                "frame_symbols": case["frame"], "max_excluded": MAX_EXCLUDED, "dependence": case.get("dependence", 0)},
                     "pending": case["pending"], "lock": case["lock"], "input": case["input"],
                     "stream": [[number(i), number(q_), ref] for i, q_, ref in case["stream"]], "reports": plain(reports)}
         lines = lambda rows: "[\n  " + ",\n  ".join(json.dumps(row) for row in rows) + "]"

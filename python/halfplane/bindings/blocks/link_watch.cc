@@ -20,6 +20,9 @@ only with decisions='receiver'): the receiver's decisions, -1 where it has none.
 set: the constellation. pattern: its text, for the report. window: symbols a report, >= 1. confidence: of the
 intervals, inside (0, 1). symbol_rate: Hz, 0 where unknown. decisions: 'own' or 'receiver'.
 
+target: what the verdict is about, 'ser:1e-3', 'ber:1e-5' or 'fer:1e-2', '' for none. frame_symbols: symbols of a
+frame, 0 for none. max_excluded: share left out beyond which nothing passes.
+
 Message ports: 'report' out (dict), 'input' in (from noise_at or a meter). Raises ValueError naming parameter and
 value.)doc")
         .def(py::init(&link_watch::make),
@@ -28,7 +31,10 @@ value.)doc")
              py::arg("window") = std::uint64_t{10000},
              py::arg("confidence") = 0.95,
              py::arg("symbol_rate") = 0.0,
-             py::arg("decisions") = "own")
+             py::arg("decisions") = "own",
+             py::arg("target") = "",
+             py::arg("frame_symbols") = std::uint64_t{0},
+             py::arg("max_excluded") = 1e-3)
         .def("report",
              &link_watch::report,
              py::call_guard<py::gil_scoped_release>(),
