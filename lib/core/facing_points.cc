@@ -35,7 +35,7 @@ public:
     void cut(complex point)
     {
         const complex w = point - d_middle;
-        if (out_of_reach(std::abs(w)))
+        if (std::isfinite(d_farthest) && std::norm(w) > d_reach * d_reach)
             return;
         const double a = std::norm(w) - d_half * d_half - d_margin * d_margin;
         const double b = -2 * (w.real() * d_along.real() + w.imag() * d_along.imag());
@@ -56,21 +56,21 @@ public:
             d_from = std::max(d_from, (-q + root) / p);
             d_to = std::min(d_to, (-q - root) / p);
         }
+        if (const double farthest = std::max(std::abs(d_from), std::abs(d_to)); farthest != d_farthest) {
+            d_farthest = farthest;
+            d_reach = farthest + std::hypot(d_half, farthest) + d_margin;
+        }
     }
 
 private:
-    /// No place of the stretch is as near to a point so far from the middle as to the two points.
-    bool out_of_reach(double distance) const
-    {
-        const double farthest = std::max(std::abs(d_from), std::abs(d_to));
-        return distance - farthest > std::hypot(d_half, farthest) + d_margin;
-    }
-
     complex d_middle;
     double d_half;
     complex d_along;
     double d_margin;
     double d_from = -std::numeric_limits<double>::infinity(), d_to = -d_from;
+    /// No place of the stretch, none being farther from the middle than d_farthest, is as near to a point
+    /// beyond d_reach as to the two points.
+    double d_farthest = d_to, d_reach = d_to;
 };
 
 bool faces(

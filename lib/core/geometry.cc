@@ -11,15 +11,16 @@ namespace halfplane {
 
 namespace {
 
-/// Distances of all pairs, i < j, up to `farthest`, ascending.
+/// Distances of all pairs, i < j, ascending.
 std::vector<double> pair_distances(const signal_set& set)
 {
+    // In units of d_min no square overflows or vanishes before two points are one.
     const auto& s = set.points();
     std::vector<double> all;
     all.reserve(s.size() * (s.size() - 1) / 2);
     for (std::size_t i = 0; i < s.size(); ++i)
         for (std::size_t j = i + 1; j < s.size(); ++j)
-            all.push_back(std::hypot(s[i].real() - s[j].real(), s[i].imag() - s[j].imag()));
+            all.push_back(std::sqrt(std::norm((s[i] - s[j]) / set.d_min())) * set.d_min());
     std::sort(all.begin(), all.end());
     return all;
 }
