@@ -35,6 +35,12 @@ std::optional<double> es_n0_for_information(const signal_set& set, double bits);
 double capacity(double es_n0);
 /// The Es/N0 (linear) at which capacity() is `bits`: 2^bits − 1.
 double es_n0_of_capacity(double bits);
+/*!
+ * Gap to capacity at this Es/N0 in dB: es_n0 over the Es/N0 at which capacity() is `bits`, the mutual
+ * information or the bit-metric rate that a set has here. What a code for this set gives away against the
+ * best set there is. \param es_n0 linear, > 0; bits > 0. \throws std::invalid_argument otherwise
+ */
+double capacity_gap_db(double es_n0, double bits);
 /// 10·log10 of es_n0 over the Es/N0 at which log2(1 + Es/N0) = H: how far an uncoded set stands from Shannon.
 double shannon_gap_db(const signal_set& set, double es_n0);
 

@@ -186,11 +186,18 @@ double es_n0_of_capacity(double bits)
     return std::expm1(bits / log2_e);
 }
 
+double capacity_gap_db(double es_n0, double bits)
+{
+    if (!(es_n0 > 0 && std::isfinite(es_n0)))
+        detail::refuse<std::invalid_argument>("es_n0 must be finite and above 0, got ", es_n0);
+    if (!(bits > 0))
+        detail::refuse<std::invalid_argument>("bits must be above 0, got ", bits);
+    return 10 * std::log10(es_n0 / es_n0_of_capacity(bits));
+}
+
 double shannon_gap_db(const signal_set& set, double es_n0)
 {
-    if (!(es_n0 > 0))
-        detail::refuse<std::invalid_argument>("es_n0 must be above 0, got ", es_n0);
-    return 10 * std::log10(es_n0 / es_n0_of_capacity(set.entropy_bits()));
+    return capacity_gap_db(es_n0, set.entropy_bits());
 }
 
 } // namespace halfplane

@@ -54,7 +54,10 @@ def curve_rows(predictor, es_n0_db):
     for k, value in enumerate(values):
         row = {"es_n0_db": float(value), "eb_n0_db": eb_n0_db(signal_set, float(value))}
         if known:
-            row["information"] = {figure: float(known[figure][k]) for figure in ("mi", "bmd_rate")}
+            row["information"] = carried = {figure: float(known[figure][k]) for figure in ("mi", "bmd_rate")}
+            for figure, gap in (("mi", "mi_gap_db"), ("bmd_rate", "bmd_gap_db")):
+                if carried[figure] > core.information_accuracy:
+                    carried[gap] = float(core.capacity_gap_db(value, carried[figure]))
         row.update({rung: _rung(arrays[rung], k) for rung in RUNGS})
         exact = arrays["exact"]
         by_bit, by_point = exact["ber_by_bit"][k], exact["ser_by_point"][k]

@@ -221,7 +221,8 @@ TEST(Information, CapacityAndGap)
 {
     EXPECT_DOUBLE_EQ(capacity(3), 2);
     EXPECT_DOUBLE_EQ(es_n0_of_capacity(2), 3);
-    EXPECT_NEAR(shannon_gap_db(named_set("qam:16"), 150), 10, 1e-12); // 2^4 − 1 = 15
+    EXPECT_NEAR(shannon_gap_db(named_set("qam:16"), 150), 10, 1e-12);      // 2^4 − 1 = 15
+    EXPECT_NEAR(capacity_gap_db(30, 3), 10 * std::log10(30 / 7.0), 1e-12); // 2^3 − 1 = 7
     EXPECT_NEAR(capacity(es_n0_of_capacity(1e-12)), 1e-12, 1e-26);
 }
 
@@ -234,4 +235,6 @@ TEST(Information, Refusals)
     EXPECT_THROW(capacity(-0.1), std::invalid_argument);
     EXPECT_THROW(es_n0_of_capacity(NAN), std::invalid_argument);
     EXPECT_THROW(shannon_gap_db(set, 0), std::invalid_argument);
+    EXPECT_THROW(capacity_gap_db(1, 0), std::invalid_argument);
+    EXPECT_THROW(capacity_gap_db(INFINITY, 1), std::invalid_argument);
 }

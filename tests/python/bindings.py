@@ -5,6 +5,7 @@ import numpy as np
 import pytest
 from command import FIRN
 from gnuradio import halfplane
+from scipy.integrate import quad
 from scipy.special import erfc
 from scipy.stats import beta, chi2
 
@@ -125,3 +126,74 @@ def test_information_of_bpsk_against_a_dense_sum():
     density = np.exp(-((y - 1) ** 2) / n0) / np.sqrt(np.pi * n0)
     want = 1 - np.sum(density * np.logaddexp(0, -4 * y / n0)) / np.log(2) * (y[1] - y[0])
     assert halfplane.information(halfplane.load_set("psk:2"), 2.0)["mi"] == pytest.approx(want, abs=1e-9)
+
+
+def test_gap_to_capacity_of_two_points():
+    """Two points on AWGN: I = 1 - E[log2(1 + exp(-L))], L ~ N(4γ, 8γ); here by SciPy's adaptive quadrature."""
+    gamma = 10 ** (np.array([-10.0, 0.0, 5.0]) / 10)
+    bits = [
+        1 - quad(lambda x, g=g: np.exp(-x * x / 2) / np.sqrt(2 * np.pi) * np.log2(1 + np.exp(-(4 * g + np.sqrt(8 * g) * x))), -38, 38,
+                 epsabs=1e-13, epsrel=1e-12, limit=500)[0] for g in gamma
+    ]  # fmt: skip
+    pair = halfplane.load_set("psk:2")
+    at = 10 * np.log10(gamma)
+    np.testing.assert_allclose(halfplane.information(pair, at)["mi"], bits, atol=1e-9)
+    gap = halfplane.capacity_gap_db(at, halfplane.information(pair, at)["mi"])
+    np.testing.assert_allclose(gap, 10 * np.log10(gamma / (2 ** np.array(bits) - 1)), atol=1e-7)
+    np.testing.assert_allclose(halfplane.es_n0_db_for_information(pair, bits), at, atol=1e-6)
+    with pytest.raises(ValueError, match="never carries"):
+        halfplane.es_n0_db_for_information(pair, 1.0)
+
+
+def test_a_mixture_of_ones_own():
+    """Two states are two curves, weighted; and a law is the same by its text or as an object."""
+    own = halfplane.mixture([(0.9, 1.0), (0.1, 0.1)], "shadow")
+    assert own.name == "shadow"
+    np.testing.assert_allclose(own.tail([0.0, 2.0]), [1.0, 0.9 * np.exp(-2) + 0.1 * np.exp(-0.2)], rtol=1e-14)
+    at = np.array([5.0, 10.0, 15.0])
+    plain, mixed = halfplane.predictor(SET), halfplane.predictor(SET, own)
+    np.testing.assert_allclose(mixed.ser(at), 0.9 * plain.ser(at) + 0.1 * plain.ser(at - 10), rtol=1e-12)
+    assert halfplane.predictor(SET, halfplane.law_of("rician:6")).ser(10.0) == halfplane.predictor(SET, "rician:6").ser(10.0)
+    assert halfplane.law_of("awgn").ln_tail(5000.0) == -5000
+    for states, says in (([(0.5, 1.0)], "sum"), ([(0.5, 1.0), (0.5, 0.0)], "gain")):
+        with pytest.raises(ValueError, match=says):
+            halfplane.mixture(states)
+
+
+def test_noise_that_is_not_circular():
+    """Two points on the real axis see the in-phase noise alone: Q(d/2σ_i), σ_i² = N0·ii/(ii + qq)."""
+    pair = halfplane.load_set("psk:2")
+    at = np.array([0.0, 6.0, 10.0])
+    sigma = np.sqrt(10 ** (-at / 10) * 3 / 4)
+    for decision in ("matched", "nearest"):
+        shaped = halfplane.predictor(pair, noise=halfplane.noise_shape(3.0, 0.0, 1.0, decision))
+        np.testing.assert_allclose(shaped.ser(at), erfc(1 / (sigma * np.sqrt(2))) / 2, rtol=1e-12)
+    with pytest.raises(ValueError, match="positive definite"):
+        halfplane.predictor(pair, noise=halfplane.noise_shape(1.0, 1.0, 1.0))
+    with pytest.raises(ValueError, match="matched, nearest"):
+        halfplane.noise_shape(decision="own")
+
+
+def test_displaced_means_by_list_by_function_and_among_neighbours():
+    predictor = halfplane.predictor(SET)
+    at = np.array([8.0, 14.0])
+    turn = np.exp(0.05j)
+    by_list = predictor.displaced(at, SET.points * turn)
+    by_function = predictor.displaced(at, lambda s: s * turn)
+    np.testing.assert_allclose(by_list["ser"], by_function["ser"], rtol=1e-12)
+    assert np.all(by_list["ser"] > predictor.ser(at))
+    # An interfering symbol at -20 dB, any of the twelve: the mean over all twelve is the plain sum of twelve runs.
+    i, k = (part.ravel() for part in np.meshgrid(np.arange(12), np.arange(12)))
+    among = predictor.displaced_among(at, i, SET.points[i] + 0.1 * SET.points[k], np.full(144, 1 / 144))
+    each = [predictor.displaced(at, SET.points + 0.1 * SET.points[n])["ser"] for n in range(12)]
+    np.testing.assert_allclose(among["ser"], np.mean(each, axis=0), rtol=1e-12)
+    with pytest.raises(ValueError, match="one length"):
+        predictor.displaced_among(at, [0, 1], [1.0], [1.0])
+
+
+def test_transition_rows_over_es_n0():
+    predictor = halfplane.predictor(SET)
+    at = np.array([[3.0, 9.0]])
+    rows = predictor.transition_row(at, 2)
+    assert rows.shape == (1, 2, 12)
+    np.testing.assert_allclose(rows, predictor.transitions(at)[:, :, 2], rtol=1e-12)

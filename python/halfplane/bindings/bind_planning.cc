@@ -58,6 +58,7 @@ py::list plan_rows(double target,
 
 void bind_planning(py::module_& m)
 {
+    m.attr("information_accuracy") = information_accuracy;
     m.def("information",
           &information_over,
           py::arg("set"),
@@ -71,6 +72,32 @@ void bind_planning(py::module_& m)
         py::arg("set"),
         py::arg("es_n0_db"),
         "Es/N0 in dB minus the one at which log2(1 + Es/N0) is the entropy of the set.");
+    m.def(
+        "capacity_gap_db",
+        [](const doubles& es_n0_db, const doubles& bits) {
+            return py::vectorize([](double db, double b) { return capacity_gap_db(from_db(db), b); })(
+                es_n0_db, bits);
+        },
+        py::arg("es_n0_db"),
+        py::arg("bits"),
+        "dB between Es/N0 and the Es/N0 at which log2(1 + Es/N0) is `bits`: what a set that carries `bits` "
+        "there (its mi, or "
+        "its\n"
+        "bmd_rate) gives away against capacity. Both broadcast. bits > 0.");
+    m.def(
+        "es_n0_db_for_information",
+        [](const signal_set& set, const doubles& bits) {
+            return over(bits, [&](double b) {
+                const auto found = es_n0_for_information(set, b);
+                if (!found)
+                    throw std::invalid_argument("the set never carries " + std::to_string(b) +
+                                                " bits a symbol");
+                return to_db(*found);
+            });
+        },
+        py::arg("set"),
+        py::arg("bits"),
+        "Es/N0 in dB at which the mutual information reaches `bits`. ValueError where it never does.");
     m.def("plan",
           &plan_rows,
           py::arg("target"),

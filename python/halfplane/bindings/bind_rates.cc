@@ -111,17 +111,140 @@ py::dict rates_over(const predictor& p, const doubles& es_n0_db)
     return out;
 }
 
-py::dict displaced_over(const predictor& p, const doubles& es_n0_db, const complexes& means)
+/// The exact rung, found by f(p, Es/N0).
+template <typename F>
+py::dict exact_over(const predictor& p, const doubles& es_n0_db, F f)
 {
-    const std::vector<complex> places(means.data(), means.data() + means.size());
     exact_arrays exact(p, es_n0_db);
     const double* in = es_n0_db.data();
     const auto count = static_cast<std::size_t>(es_n0_db.size());
     {
         py::gil_scoped_release free;
-        parallel_for(count, [&](std::size_t k) { exact.set(k, p.displaced(linear(in[k]), places)); });
+        parallel_for(count, [&](std::size_t k) { exact.set(k, f(linear(in[k]))); });
     }
     return exact.dict();
+}
+
+/// Means by index, or what a function makes of each point.
+py::dict displaced_over(const predictor& p, const doubles& es_n0_db, const py::object& means)
+{
+    std::vector<complex> places;
+    if (py::isinstance<py::function>(means)) {
+        for (const complex point : p.set().points())
+            places.push_back(means(point).cast<complex>());
+    } else {
+        const auto array = means.cast<complexes>();
+        places.assign(array.data(), array.data() + array.size());
+    }
+    return exact_over(p, es_n0_db, [&](double es_n0) { return p.displaced(es_n0, places); });
+}
+
+py::dict displaced_among_over(const predictor& p,
+                              const doubles& es_n0_db,
+                              const std::vector<std::size_t>& sent,
+                              const complexes& means,
+                              const doubles& weights)
+{
+    const auto count = static_cast<py::ssize_t>(sent.size());
+    if (means.size() != count || weights.size() != count)
+        throw std::invalid_argument("sent, means and weights must be of one length, got " +
+                                    std::to_string(count) + ", " + std::to_string(means.size()) + " and " +
+                                    std::to_string(weights.size()));
+    std::vector<displaced_point> arrivals;
+    for (std::size_t k = 0; k < sent.size(); ++k)
+        arrivals.push_back({sent[k], means.data()[k], weights.data()[k]});
+    return exact_over(p, es_n0_db, [&](double es_n0) { return p.displaced_among(es_n0, arrivals); });
+}
+
+py::array_t<double> transition_rows_over(const predictor& p, const doubles& es_n0_db, std::size_t index)
+{
+    const std::size_t size = p.set().size();
+    py::array_t<double> out(shape_of(es_n0_db, {static_cast<py::ssize_t>(size)}));
+    double* to = out.mutable_data();
+    const double* in = es_n0_db.data();
+    const auto count = static_cast<std::size_t>(es_n0_db.size());
+    py::gil_scoped_release free;
+    parallel_for(count, [&](std::size_t k) {
+        const auto row = p.transition_row(linear(in[k]), index);
+        std::copy(row.begin(), row.end(), to + k * size);
+    });
+    return out;
+}
+
+/// A law as its text or as a law object.
+std::shared_ptr<const law> law_from(const py::object& given)
+{
+    if (py::isinstance<law>(given))
+        return given.cast<std::shared_ptr<law>>();
+    return parse_law(given.cast<std::string>());
+}
+
+metric parse_metric(const std::string& text)
+{
+    if (text != "matched" && text != "nearest")
+        throw std::invalid_argument("decision is '" + text + "'; one of matched, nearest is wanted");
+    return text == "matched" ? metric::matched : metric::nearest;
+}
+
+void bind_laws(py::module_& m)
+{
+    py::class_<law, std::shared_ptr<law>>(
+        m, "law", R"(The law of the random power gain G of a channel, mean Es/N0 as stated.
+
+Made by law_of() from what the command line takes, or by mixture().)")
+        .def_property_readonly("name", &law::name, "As the command line writes it.")
+        .def(
+            "tail",
+            [](const law& l, const doubles& u) { return over(u, [&](double x) { return l.tail(x); }); },
+            py::arg("u"),
+            "T(u) = E[exp(-G·u)] at u >= 0, u = r²/N0; in the shape of u.")
+        .def(
+            "ln_tail",
+            [](const law& l, const doubles& u) { return over(u, [&](double x) { return l.ln_tail(x); }); },
+            py::arg("u"),
+            "ln T(u), also where T(u) is below the smallest double.")
+        .def("__repr__", [](const law& l) { return "<law " + l.name() + ">"; });
+    m.def(
+        "law_of",
+        [](const std::string& text) { return std::const_pointer_cast<law>(parse_law(text)); },
+        py::arg("text"),
+        "The law that the command line writes so: awgn, rayleigh, rician:K_DB, nakagami:M, LAW*L, "
+        "impulsive:A:GAMMA.\n"
+        "Raises ValueError naming what is not understood.");
+    m.def(
+        "mixture",
+        [](const std::vector<std::pair<double, double>>& states,
+           const std::string& name) -> std::shared_ptr<law> {
+            std::vector<channel_state> all;
+            for (const auto& [probability, gain] : states)
+                all.push_back({probability, gain});
+            return std::make_shared<mixture>(std::move(all), name);
+        },
+        py::arg("states"),
+        py::arg("name") = "mixture",
+        "A law of your own: [(probability, power gain)], the gain relative to the stated Es/N0, known to the "
+        "detector.\n"
+        "Raises ValueError unless probabilities are above 0 and sum to 1 within 1e-9, and gains are above "
+        "0.");
+    py::class_<noise_shape>(
+        m,
+        "noise_shape",
+        R"(Covariance of Gaussian noise in (i, q) up to a factor: only its shape counts, N0 comes from Es/N0.
+
+decision: 'matched' where the detector knows it (distances in the whitened plane), 'nearest' where it takes plain distances.)")
+        .def(py::init([](double ii, double iq, double qq, const std::string& decision) {
+                 return noise_shape{ii, iq, qq, parse_metric(decision)};
+             }),
+             py::arg("ii") = 1.0,
+             py::arg("iq") = 0.0,
+             py::arg("qq") = 1.0,
+             py::arg("decision") = "matched")
+        .def_readonly("ii", &noise_shape::ii)
+        .def_readonly("iq", &noise_shape::iq)
+        .def_readonly("qq", &noise_shape::qq)
+        .def_property_readonly("decision", [](const noise_shape& s) {
+            return s.decision == metric::matched ? "matched" : "nearest";
+        });
 }
 
 py::array_t<double> transitions_over(const predictor& p, const doubles& es_n0_db)
@@ -176,20 +299,26 @@ void check_index(const predictor& p, std::size_t index)
 
 void bind_rates(py::module_& m)
 {
+    bind_laws(m);
     py::class_<predictor>(
         m, "predictor", R"(Predicted error rates of one set under one channel law and detector.
 
-set: a signal_set. law: as the command line writes it ("awgn", "rayleigh", "rician:6", …).
+set: a signal_set. law: a law, or as the command line writes it ("awgn", "rayleigh", "rician:6", …).
 detector: "map", "ml" or "automatic" (MAP where the priors differ, nearest point otherwise).
+noise: a noise_shape where the noise is not circular.
 rung, wherever it is asked for: "exact", "facing", "union" or "nearest".
 Es/N0 is in dB, a number or an array of any shape; rates come back in that shape. Raises ValueError where a law, a
 detector, a rung or an Es/N0 is refused.)")
-        .def(py::init([](const signal_set& set, const std::string& law, const std::string& rule) {
-                 return std::make_unique<predictor>(set, parse_law(law), parse_detector(rule));
+        .def(py::init([](const signal_set& set,
+                         const py::object& law,
+                         const std::string& rule,
+                         const noise_shape& shape) {
+                 return std::make_unique<predictor>(set, law_from(law), parse_detector(rule), shape);
              }),
              py::arg("set"),
              py::arg("law") = "awgn",
-             py::arg("detector") = "automatic")
+             py::arg("detector") = "automatic",
+             py::arg_v("noise", noise_shape{}, "noise_shape()"))
         .def_property_readonly("set", &predictor::set)
         .def_property_readonly("law", [](const predictor& p) { return p.channel().name(); })
         .def_property_readonly(
@@ -226,20 +355,30 @@ ser_by_point (one more dimension of M, by index) and ber_by_bit (one more of lab
              "P(decided j | sent i) as [..., i, j], two more dimensions than es_n0_db; each row sums to 1.")
         .def(
             "transition_row",
-            [](const predictor& p, double es_n0_db, std::size_t index) {
+            [](const predictor& p, const doubles& es_n0_db, std::size_t index) {
                 check_index(p, index);
-                return array_of(p.transition_row(linear(es_n0_db), index));
+                return transition_rows_over(p, es_n0_db, index);
             },
             py::arg("es_n0_db"),
             py::arg("index"),
-            "P(decided j | sent index) for all j.")
+            "P(decided j | sent index) for all j, one more dimension than es_n0_db.")
         .def("displaced",
              &displaced_over,
              py::arg("es_n0_db"),
              py::arg("means"),
              "Exact rates where point i arrives at means[i] while the detector stays as it is: a dict of "
              "arrays as\n"
-             "rates()['exact']. means: M finite complex numbers.")
+             "rates()['exact']. means: M finite complex numbers, or a function from a point to its mean.")
+        .def("displaced_among",
+             &displaced_among_over,
+             py::arg("es_n0_db"),
+             py::arg("sent"),
+             py::arg("means"),
+             py::arg("weights"),
+             "The same for any number of places a point: with probability weights[k] point sent[k] is sent "
+             "and arrives at "
+             "means[k]\n"
+             "(one for each interfering neighbour, say). Three arrays of one length; weights sum to 1.")
         .def(
             "expected_counts",
             [](const predictor& p, double es_n0_db, const std::vector<std::uint64_t>& sent) {

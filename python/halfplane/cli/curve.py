@@ -45,16 +45,18 @@ def _table(document):
     name = facts.get("name", "a set without a name")
     title = f"{name}: {facts['size']} points, {document['law']}, {document['detector']} detector"
     rows = document["rows"]
-    known = [key for key in ("mi", "bmd_rate") if any(key in row.get("information", {}) for row in rows)]
+    headings = {"mi": ("MI bit", ".4f"), "mi_gap_db": ("gap dB", ".2f"), "bmd_rate": ("BMD bit", ".4f")}
+    known = [key for key in headings if any(key in row.get("information", {}) for row in rows)]
     result = shown.table(
         "Es/N0 dB", "Eb/N0 dB", ("SER exact", shown.STRONG), "≤ facing", "≤ union", "≈ nearest",
-        ("BER exact", shown.STRONG), "≤ union", *({"mi": "MI bit", "bmd_rate": "BMD bit"}[key] for key in known), title=title,
+        ("BER exact", shown.STRONG), "≤ union", *(headings[key][0] for key in known), title=title,
     )  # fmt: skip
     for row in rows:
         cells = [shown.db(row["es_n0_db"]), shown.db(row["eb_n0_db"])]
         for rung, kind in (("exact", "ser"), ("facing", "ser"), ("union", "ser"), ("nearest", "ser"), ("exact", "ber"), ("union", "ber")):
             cells.append(shown.rate(row[rung].get(kind), row[rung]["ln_" + kind]))
-        cells += [f"{row['information'][key]:.4f}" for key in known]
+        carried = row.get("information", {})
+        cells += [format(carried[key], headings[key][1]) if key in carried else "" for key in known]
         result.add_row(*cells)
     return result
 
@@ -62,7 +64,7 @@ def _table(document):
 def _write_csv(path, document):
     """One line a row; an empty field where a rate is below the smallest double (its logarithm stands)."""
     kinds = ("ser", "ber", "ln_ser", "ln_ber", "ber_if_gray")
-    columns = ["es_n0_db", "eb_n0_db", "mi", "bmd_rate"]
+    columns = ["es_n0_db", "eb_n0_db", "mi", "mi_gap_db", "bmd_rate", "bmd_gap_db"]
     columns += [f"{rung}_{kind}" for rung in documents.RUNGS for kind in kinds]
     with open(path, "w", newline="", encoding="utf-8") as stream:
         out = csv.DictWriter(stream, columns, restval="", lineterminator="\n")
