@@ -23,8 +23,17 @@ _BLOCKS = (
 )
 
 
+# Blocks in Python: where each stands, and the Debian packages it needs beyond what the others need.
+_SHOWING = {
+    "link_page": ("page.block", "python3-aiohttp python3-prometheus-client"),
+}
+
+
 def __getattr__(name):
     """Loads the blocks when one of them is first asked for (PEP 562)."""
+    if name in _SHOWING:
+        block = globals()[name] = _load(name, *_SHOWING[name])
+        return block
     if name in _BLOCKS:
         from . import blocks_python
 
@@ -33,5 +42,17 @@ def __getattr__(name):
     raise AttributeError(f"module {__name__!r} has no attribute {name!r}")
 
 
+def _load(name, where, packages):
+    """A block that not every system can run: without its packages the rest of the module works all the same."""
+    import importlib
+
+    try:
+        return getattr(importlib.import_module(f"{__name__}.{where}"), name)
+    except ModuleNotFoundError as error:
+        if (error.name or "").split(".")[0] in ("gnuradio", "pmt"):
+            raise
+        raise ImportError(f"{name} needs the Python module {error.name!r}; on Debian: apt install {packages}", name=error.name) from error
+
+
 def __dir__():
-    return sorted([*globals(), *_BLOCKS])
+    return sorted([*globals(), *_BLOCKS, *_SHOWING])
