@@ -67,7 +67,7 @@ def _losses(report: dict, width: int) -> Table | None:
     table.add_column("", justify="left", no_wrap=True)
     for cause, db, _ in found:
         bar = ("░" if cause in REST else "█") * max(0, round(room * abs(db) / largest))
-        table.add_row(words.name(cause), f"{db:+.2f}", Text(bar, style="cyan"))
+        table.add_row(words.name(cause), f"{round(db, 2) + 0.0:+.2f}", Text(bar, style="cyan"))
     if total is not None:
         table.add_row(Text(whole(report), style=shown.STRONG), Text(shown.db(total), style=shown.STRONG), "")
     return table

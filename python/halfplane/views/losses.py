@@ -101,7 +101,7 @@ def _of_interval(report: dict) -> list[float]:
 
 
 def _draw_row(out, axis, y, column, name, start, end, db, rest, note) -> None:
-    text = f"{'+' if db >= 0 else ''}{words.db(db)} dB"
+    text = f"{'+' if round(db, 2) >= 0 else ''}{words.db(db)} dB"
     said = f"{name}: {text}" + (f"; {note}" if note else "")
     low, high = sorted((axis(start), axis(end)))
     out.add(Text(_MARGIN, y + 12, lettering.shortened(name, column - 10, 12), "ink", 12, note=said))
