@@ -28,6 +28,7 @@ class FirnLink(gr.top_block):
     signal_set: what to send. pattern: text, as test_pattern takes it. es_n0_db: at the input of the receiver.
     symbols: how many are to be judged or left out. log: path of a file for reports, or None. seed: of the noise.
     timing_bandwidth: of the timing loop, in radians a symbol as the host counts it; wider follows faster and costs more.
+    watch: further options of link_watch.
     """
 
     GAIN = 0.31  # complex gain of the channel
@@ -36,14 +37,14 @@ class FirnLink(gr.top_block):
     DELAY = 1237  # samples
     FRACTION = 0.37  # of a sample
 
-    def __init__(self, signal_set, pattern, es_n0_db, symbols, log=None, seed=1, timing_bandwidth=0.1, window=10000):
+    def __init__(self, signal_set, pattern, es_n0_db, symbols, log=None, seed=1, timing_bandwidth=0.1, window=10000, **watch):
         super().__init__("Firn line")
         pulse = firdes.root_raised_cosine(
             1.0, SAMPLES_PER_SYMBOL, 1.0, ROLL_OFF, PULSE_SYMBOLS * SAMPLES_PER_SYMBOL + 1
         )
         energy = halfplane.noise_at.energy(pulse)
         noise = halfplane.noise_at(signal_set, es_n0_db, energy, seed)
-        self.watch = halfplane.link_watch(signal_set, pattern, window=window)
+        self.watch = halfplane.link_watch(signal_set, pattern, window=window, **watch)
         self.aligner = halfplane.aligner(signal_set, pattern)
 
         slope = [

@@ -3,6 +3,9 @@
 
 from __future__ import annotations
 
+import os.path
+import textwrap
+
 from rich.console import Group
 from rich.table import Table
 from rich.text import Text
@@ -28,7 +31,8 @@ def screen(report: dict, name: str, width: int, remark: str = "") -> Group:
 
 
 def _head(report: dict, name: str, width: int, remark: str) -> Text:
-    left = " · ".join(filter(None, (report.get("set"), report.get("pattern"), name)))
+    place = name if "://" in name else os.path.basename(name)
+    left = " · ".join(filter(None, (report.get("set"), report.get("pattern"), place)))
     right = remark or report.get("time", "")
     left = left if len(left) + len(right) + 2 <= width else left[: max(0, width - len(right) - 3)] + "…"
     return Text.assemble((left, shown.STRONG), " " * max(1, width - len(left) - len(right)), (right, shown.WARN if remark else shown.QUIET))
@@ -37,23 +41,26 @@ def _head(report: dict, name: str, width: int, remark: str) -> Text:
 def _answers(report: dict, width: int) -> Table:
     """Beside each other where there is room, else one below the other."""
     found = glance.answers(report)
-    table = Table(box=None, show_header=False, pad_edge=False, padding=(1, 2, 1, 0), width=width)
-    cells = [
-        Text.assemble((each.question + "\n", shown.QUIET), (f"{_SIGNS[each.state]} ", _STYLES[each.state]), (each.answer, shown.STRONG),
-                      ("\n" + each.detail if each.detail else "", ""))
-        for each in found
-    ]  # fmt: skip
-    if width >= 90:
-        for _ in cells:
-            table.add_column(ratio=1, overflow="fold")
-        table.add_row(*cells)
-    else:
-        table.padding = (0, 2, 0, 0)
-        table.add_column(overflow="fold")
-        for cell in cells:
-            table.add_row(cell)
+    beside = width >= 90
+    room = (width - 4) // 3 if beside else width
+    cells = [_answer(each, room) for each in found]
+    table = Table(box=None, show_header=False, pad_edge=False, padding=(0, 2, 1, 0) if beside else (0, 0, 0, 0))
+    for _ in cells if beside else cells[:1]:
+        table.add_column(no_wrap=True, width=room)
+    for row in [cells] if beside else [[cell] for cell in cells]:
+        table.add_row(*row)
+    if not beside:
         table.add_row("")
     return table
+
+
+def _answer(each: glance.Answer, room: int) -> Text:
+    # textwrap keeps the groups of a number together, rich's own wrapping would not.
+    head = textwrap.wrap(each.answer, room - 2)
+    text = Text.assemble((each.question + "\n", shown.QUIET), (f"{_SIGNS[each.state]} ", _STYLES[each.state]), ("\n  ".join(head), shown.STRONG))
+    for line in textwrap.wrap(each.detail, room):
+        text.append("\n" + line)
+    return text
 
 
 def _losses(report: dict, width: int) -> Table | None:

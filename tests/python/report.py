@@ -147,7 +147,7 @@ def test_page_shows_the_reports_numbers(tmp_path, log):
         assert words.count(number) in page
     for said in (
         "0.25 dB (0.18 to 0.33 dB)", "11.75 ± 0.01", "echo", "+0.08 dB", "fails by 0.12 dB", "not explained", "halfplane 0.1.0", "draw:2026",
-        hashlib.sha256(log.read_bytes()).hexdigest(), sample_logs.DIGEST, "50\u202f000 symbols/s", "2026-03-01T06:00:01.000Z to 2026-03-01T06:00:05.000Z",
+        hashlib.sha256(log.read_bytes()).hexdigest(), sample_logs.DIGEST, "50\u202f000 symbols/s", "Target SER below 10⁻³", "Share that may be left out 0.001", "2026-03-01T06:00:01.000Z to 2026-03-01T06:00:05.000Z",
         *sample_logs.settings()["labels"],
     ):  # fmt: skip
         assert said in page, said

@@ -16,7 +16,7 @@ def settings(what=FIRN):
     found = {
         "set": signal_set.name, "points": [[p.real, p.imag] for p in signal_set.points], "labels": signal_set.label_strings,
         "pattern": "draw:2026", "law": "awgn", "detector": "ml", "decisions": "own", "confidence": 0.95, "window": 10000,
-        "symbol_rate": 50000.0,
+        "symbol_rate": 50000.0, "target": "ser:1e-3", "max_excluded": 0.001,
     }  # fmt: skip
     if not signal_set.uniform:
         found["priors"] = list(signal_set.priors)

@@ -73,12 +73,13 @@ class _Page:
             ("Confidence of intervals", f"{100 * last['confidence']:g} %" if "confidence" in last else None),
             ("Symbol rate", f"{words.count(settings['symbol_rate'])} symbols/s" if "symbol_rate" in settings else None),
             ("Window", f"{words.count(settings['window'])} symbols" if "window" in settings else None),
+            ("Target", _target(settings.get("target"))),
             ("Measured", _span(self.points[0].get("first_time"), last.get("time"))),
             ("Software that measured", f"halfplane {last['version']}" if "version" in last else None),
             ("Software that wrote this", f"halfplane {self.document['version']}"),
         ]
         rows = "".join(f"<tr><th scope=row>{escape(name)}</th><td>{escape(str(value))}</td></tr>" for name, value in facts if value)
-        known = {"set", "points", "labels", "priors", "pattern", "law", "detector", "decisions", "confidence", "symbol_rate", "window"}
+        known = {"set", "points", "labels", "priors", "pattern", "law", "detector", "decisions", "confidence", "symbol_rate", "window", "target"}
         for key in sorted(set(settings) - known):
             rows += f"<tr><th scope=row>{escape(words.name(key).capitalize())}</th><td>{escape(_plain(settings[key]))}</td></tr>"
         yield "summary", "What was measured", content + f'<table class="facts"><tbody>{rows}</tbody></table>\n'
@@ -148,6 +149,15 @@ class _Page:
             f"{k + 1} is {escape(self.document['logs'][point['log']]['file'])}, lines {point['lines'][0]} to {point['lines'][1]}" for k, point in enumerate(self.points)
         ) + ".</p>\n"  # fmt: skip
         yield "evidence", "Evidence", content
+
+
+def _target(text: str | None) -> str | None:
+    """'SER below 0.02' of 'ser:2e-2'."""
+    kind, _, value = (text or "").partition(":")
+    try:
+        return words.target({kind: float(value)}) if value else None
+    except ValueError:
+        return text
 
 
 def _span(first: str | None, last: str | None) -> str | None:

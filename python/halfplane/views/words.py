@@ -86,6 +86,8 @@ _NAMES = {
     # causes of losses
     "iq_imbalance": "I/Q imbalance", "gain_error": "gain", "phase_error": "phase", "filter": "filter mismatch", "excess_noise": "receiver noise",
     "interaction": "acting together", "unexplained": "not explained", "rest": "not explained",
+    # settings
+    "max_excluded": "share that may be left out", "frame_symbols": "symbols of a frame",
     # premises
     "no_memory": "no memory of neighbours", "no_image": "no mirror image", "linear": "linear", "circular": "noise alike in all directions",
     "gaussian": "Gaussian noise", "steady_noise": "steady noise", "steady_gain": "steady gain", "white": "white noise",
