@@ -80,8 +80,10 @@ def test_torn_lines_are_left_out_and_told(tmp_path, log):
 )
 def test_what_is_no_report_is_refused_with_its_place(tmp_path, line, said):
     bad = sample_logs.write(tmp_path / "bad.jsonl", sample_logs.settings_line(), next(sample_logs.run()), line)
-    message = refused("report", bad, "--json")
-    assert f"{bad}:3: " in message and said in message, message
+    with pytest.raises(source.LogError) as refusal:
+        source.read([bad])
+    message = str(refusal.value)
+    assert message.startswith(f"{bad}:3: ") and said in message, message
 
 
 def test_what_is_not_one_link_is_refused(tmp_path, log):
@@ -93,8 +95,10 @@ def test_what_is_not_one_link_is_refused(tmp_path, log):
     moved = sample_logs.settings()
     moved["points"][0][0] += 0.1
     mixed = sample_logs.write(tmp_path / "mixed.jsonl", sample_logs.settings_line(moved), next(sample_logs.run()))
-    assert "the set's points differ" in refused("report", log, mixed, "--json")
-    assert "no report in it" in refused("report", sample_logs.write(tmp_path / "empty.jsonl"), "--json")
+    with pytest.raises(source.LogError, match="the set's points differ"):
+        source.read([log, mixed])
+    with pytest.raises(source.LogError, match="no report in it"):
+        source.read([sample_logs.write(tmp_path / "empty.jsonl")])
 
 
 def test_document_holds_the_logs_numbers(log):
@@ -208,15 +212,19 @@ def test_against_a_stored_run(tmp_path, log):
 
 
 def test_what_is_no_baseline_is_refused(tmp_path, log):
+    mine = acceptance.of_logs(source.read([log]))
     for content in ("{", "[]", '{"schema": "halfplane/acceptance/1"}', '{"schema": "halfplane/acceptance/1", "points": [3]}',
                     '{"schema": "halfplane/acceptance/1", "points": []}'):  # fmt: skip
         stored = tmp_path / "stored.json"
         stored.write_text(content)
-        assert str(stored) in refused("report", log, "--json", "--against", stored)
-    other = json.loads(halfplane("report", log, "--json").stdout)
+        with pytest.raises(ValueError, match=re.escape(str(stored))):
+            acceptance.set_against(mine, stored)
+    assert str(stored) in refused("report", log, "--json", "--against", stored)
+    other = json.loads(json.dumps(mine))
     other["points"][0]["report"]["set"] = "another"
     stored.write_text(json.dumps(other))
-    assert "set is another, but firn-12" in refused("report", log, "--json", "--against", stored)
+    with pytest.raises(ValueError, match="set is another, but firn-12"):
+        acceptance.set_against(mine, stored)
 
 
 def test_usage_is_checked_before_anything_is_read(tmp_path, log):
@@ -242,6 +250,22 @@ def test_log_without_settings_is_reported_on(tmp_path):
     assert halfplane("report", log, "--out", tmp_path / "old.html").returncode == 0
     page = text_of((tmp_path / "old.html").read_text())
     assert words.rate(list(sample_logs.run())[-1]["total"]["ser"]) in page and "Decision cells" not in page
+
+
+def test_report_printed_over_several_lines_is_read(tmp_path):
+    report = list(sample_logs.run())[-1]
+    log = tmp_path / "one.json"
+    log.write_text(json.dumps({**report, "settings": sample_logs.settings()}, indent=2))
+    found = document("report", log)
+    assert found["points"][0]["report"] == report and found["settings"] == sample_logs.settings()
+
+
+def test_drawings_that_say_the_same_have_ids_of_their_own(tmp_path):
+    searching = [{**sample_reports.searching(), "schema": "halfplane/report/1", "sequence": 0} for _ in range(2)]
+    log = sample_logs.write(tmp_path / "a.jsonl", *searching)
+    halfplane("report", log, "--out", tmp_path / "a.html")
+    ids = re.findall(r' id="([^"]+)"', (tmp_path / "a.html").read_text())
+    assert len(ids) == len(set(ids)) > 10
 
 
 def test_run_that_never_locked_is_reported_on(tmp_path):

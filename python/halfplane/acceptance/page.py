@@ -40,6 +40,7 @@ def html(document: dict, trace: views.Trace, theme: str = "light", for_print: bo
 class _Page:
     def __init__(self, document: dict, trace: views.Trace, theme: str):
         self.document, self.trace, self.theme = document, trace, theme
+        self.figures = 0
         self.settings = document.get("settings")
         self.points = document["points"]
         self.reports = [point["report"] for point in self.points]
@@ -47,7 +48,8 @@ class _Page:
 
     def figure(self, drawing, caption: str = "") -> str:
         text = f"<figcaption>{escape(caption)}</figcaption>" if caption else ""
-        return f"<figure>{svg.render(drawing, self.theme)}{text}</figure>\n"
+        self.figures += 1
+        return f"<figure>{svg.render(drawing, self.theme, str(self.figures))}{text}</figure>\n"
 
     def banner(self) -> str:
         state = self.document.get("verdict")

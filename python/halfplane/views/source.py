@@ -10,6 +10,7 @@ without settings lines are read too; views then say what they cannot know. A mes
 from __future__ import annotations
 
 import hashlib
+import itertools
 import json
 from collections.abc import Iterator
 from dataclasses import dataclass, field
@@ -189,10 +190,15 @@ class Logs:
 
 
 def lines(path: str | Path) -> Iterator[tuple[Record | None, bytes, bool]]:
-    """(record or None, the raw line, whether it is torn) of each line of a log file."""
+    """
+    (record or None, the raw line, whether it is torn) of each line of a log file. A file that holds one report over several
+    lines, as `--json` prints it, counts as one line.
+    """
     reader = Reader(str(path))
     with open(path, "rb") as stream:
-        for raw in stream:
+        first = stream.readline()
+        rest = [first + stream.read()] if first.strip() == b"{" else itertools.chain([first], stream) if first else []
+        for raw in rest:
             try:
                 yield reader.take(raw.decode("utf-8", errors="replace")), raw, False
             except Torn:

@@ -13,20 +13,23 @@ from .drawing import CORNERS, DASHES, STROKES, Arrow, Bar, Cloud, Drawing, Line,
 Palette = Callable[[str], str]
 
 
-def render(drawing: Drawing, theme: str = "light") -> str:
+def render(drawing: Drawing, theme: str = "light", key: str = "") -> str:
     """
     One `<svg>` element, with title and description for screen readers.
 
     theme: "light" or "dark" write the colours out: a file of its own, or for a converter that knows no CSS. "page" names
     them by CSS custom properties, for a page that carries themes.stylesheet(); there the one SVG follows the page's
     theme, and no style attribute stands in it, so that a strict content security policy may hold.
+
+    key: told apart by it are drawings on one page that say the same (ids must not stand twice).
     """
     if theme == "page":
         palette: Palette = lambda role: f"var({themes.variable(role)})"  # noqa: E731
     else:
         palette = themes.THEMES[theme].__getitem__
     # Ids are the page's: what a drawing refers to is named by what it says.
-    key = hashlib.sha256(f"{drawing.view}\n{drawing.title}\n{drawing.description}\n{theme}".encode()).hexdigest()[:10]
+    said = "\n".join((drawing.view, drawing.title, drawing.description, theme, key))
+    key = hashlib.sha256(said.encode()).hexdigest()[:10]
     body = [line for item in drawing.items for line in _DRAWN[type(item)](item, palette, key)]
     hatches = sorted({item.edge or "rest" for item in drawing.items if getattr(item, "hatch", False)})
     defs = "".join(_hatching(role, palette, key) for role in hatches)
