@@ -38,6 +38,9 @@ struct loss {
 struct loss_question {
     /// Es/N0 ahead of the receiver, dB; absent where it is not known.
     std::optional<double> input_es_n0_db;
+    /// N0 over Es by the gauge of all judged symbols; absent: by the regression, from the explained ones
+    /// alone.
+    std::optional<double> gauged_n0;
     /// The Es/N0 at which the exact curve gives the counted SER, dB; absent without errors.
     std::optional<double> achieved_es_n0_db;
 };

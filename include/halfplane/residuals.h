@@ -43,11 +43,13 @@ struct residual_moments {
     double turned_norm = 0;   ///< Σ|ê·s*|⁴
     double signal_fourth = 0; ///< Σ|1 + β̂_0|²|s|⁴
     std::uint64_t pairs = 0;
-    complex lag_one = 0; ///< Σ ê_k·ê*_{k−1} over `pairs`
+    complex lag_one = 0;     ///< Σ ê_k·ê*_{k−1} over `pairs`
+    double lag_one_norm = 0; ///< Σ|ê_k|²|ê_{k−1}|²
     std::uint64_t blocks = 0;
     double block_powers = 0; ///< Σ over blocks of (Σ|ê|²)²
     std::uint64_t stretches = 0;
-    /// Σ over stretches of (Re Σ ê·s*)²/Σ|s|², and of Im, less the share that the error of β̂_0 has in it
+    /// Σ over stretches of (Re Σ ê·s*)², and of Im, each over its variance where the gain is steady: by the
+    /// stretch's own noise power and the error of β̂_0
     double radial_gain = 0, tangential_gain = 0;
 
     void merge(const residual_moments& later);

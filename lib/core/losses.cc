@@ -55,6 +55,7 @@ public:
         find_phase_noise();
         find_fixed();
         find_neighbours();
+        full.n0 = noise_alone();
         find_gain();
         find_noise();
     }
@@ -105,9 +106,7 @@ private:
             return;
         const double share = std::min(excess / d_moments.signal_fourth, 0.9);
         const double variance = -std::log1p(-share), ratio = std::expm1(variance);
-        const double taken = std::norm(d_gain) * ratio * d_fit.column_power[column::gain];
         full.phase_variance = variance;
-        full.n0 = std::max(full.n0 - taken, 0.02 * full.n0);
         const auto back = give_back(std::exp(-variance / 2));
         found.push_back({cause::phase_noise, ratio, [back](impairment& link) {
                              link.phase_variance = 0;
@@ -146,6 +145,21 @@ private:
                                  back(link);
                              }});
         }
+    }
+
+    /// What is left of the gauge's N0, which knows all symbols but gain and offset only.
+    double noise_alone() const
+    {
+        const double turned =
+            full.phase_variance > 0 ? std::expm1(full.phase_variance) * d_fit.column_power[column::gain] : 0;
+        const double fixed = std::norm(full.image) * d_fit.column_power[column::image] +
+                             std::norm(full.curve) * d_fit.column_power[column::compression] +
+                             power(full.taps) * d_fit.column_power[column::gain];
+        const double signal = std::norm(d_gain), least = 0.02 * d_fit.n0;
+        if (d_asked.gauged_n0)
+            if (const double n0 = *d_asked.gauged_n0 - signal * (turned + fixed); n0 > least)
+                return n0;
+        return std::max(d_fit.n0 - signal * turned, least);
     }
 
     void find_neighbours()
@@ -199,12 +213,10 @@ private:
         const double relative = full.n0 / std::norm(d_gain);
         const auto& m = d_moments;
         double foretold = 0;
-        if (m.pairs > 0 && m.power > 0) {
-            const auto pairs = static_cast<double>(m.pairs);
-            const double squared =
-                std::norm(m.lag_one / pairs) / std::pow(m.power / static_cast<double>(m.symbols), 2);
-            if (beyond_chance(pairs * squared))
-                foretold = std::min(squared, 0.99);
+        if (m.lag_one_norm > 0) {
+            const double x = std::norm(m.lag_one) / m.lag_one_norm; // exponential where the noise is white
+            if (beyond_chance(x))
+                foretold = std::min(x / static_cast<double>(m.pairs), 0.99);
         }
         if (!d_asked.input_es_n0_db)
             return; // how much of the noise is the receiver's doing is unknown

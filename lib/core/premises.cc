@@ -110,15 +110,15 @@ std::vector<premise> find_premises(const residual_sums& sums)
                          effect_of((chi / degrees - 1) * of_one / (length * n0 * n0))));
 
     const auto stretches = static_cast<double>(m.stretches);
-    const double gains = (m.radial_gain + m.tangential_gain) / (n0 / 2);
-    all.push_back(judged("steady_gain",
-                         chance_above(gains, 2 * stretches),
-                         effect_of((gains / (2 * stretches) - 1) * stretches / counted)));
+    if (m.stretches > 0) {
+        const double gains = m.radial_gain + m.tangential_gain;
+        all.push_back(judged("steady_gain",
+                             chance_above(gains, 2 * stretches),
+                             effect_of((gains / (2 * stretches) - 1) * stretches / counted)));
+    }
 
-    const auto pairs = static_cast<double>(m.pairs);
-    const double foretold = std::norm(m.lag_one / pairs) / (n0 * n0);
-    all.push_back(judged(
-        "white", std::exp(-pairs * foretold), -to_db(1 - std::clamp(foretold - 1 / pairs, 0.0, 0.999))));
+    const double share = 1 / static_cast<double>(m.pairs), x = std::norm(m.lag_one) / m.lag_one_norm;
+    all.push_back(judged("white", std::exp(-x), -to_db(1 - std::clamp((x - 1) * share, 0.0, 0.999))));
     return all;
 }
 

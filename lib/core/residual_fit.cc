@@ -23,6 +23,7 @@ void residual_moments::merge(const residual_moments& later)
     signal_fourth += later.signal_fourth;
     pairs += later.pairs;
     lag_one += later.lag_one;
+    lag_one_norm += later.lag_one_norm;
     blocks += later.blocks;
     block_powers += later.block_powers;
     stretches += later.stretches;

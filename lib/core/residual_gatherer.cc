@@ -214,7 +214,7 @@ void residual_gatherer::add_moments(const layout& at)
     const complex turn = std::conj(gain) / std::abs(gain);
     residual_moments m;
     complex before{}, gained{};
-    double sent_power = 0, sent_fourth = 0, block_power = 0;
+    double sent_power = 0, sent_fourth = 0, block_power = 0, power_before = 0;
     for (std::size_t k = 0; k < stretch; ++k) {
         const complex s = at.sent.at(k + reach), x = left.at(k) - offset;
         const complex along = product(product(x, turn), std::conj(s)), square = product(along, along);
@@ -228,7 +228,9 @@ void residual_gatherer::add_moments(const layout& at)
         sent_fourth += sent * sent;
         gained += along;
         m.lag_one += product(x, std::conj(before));
+        m.lag_one_norm += power * power_before;
         before = x;
+        power_before = power;
         block_power += power;
         if (k % block == block - 1) {
             m.block_powers += block_power * block_power;
@@ -240,12 +242,18 @@ void residual_gatherer::add_moments(const layout& at)
     m.pairs = stretch - 1;
     m.blocks = stretch / block;
     if (sent_power > 0) {
-        // The model's own gain is off by N0·(Φ*Φ)⁻¹, independent of this stretch: as in recursive residuals.
-        const double whole =
-            sent_power * (1 + sent_power * d_model->inverse[column::gain][column::gain].real());
-        m.stretches = 1;
-        m.radial_gain = gained.real() * gained.real() / whole;
-        m.tangential_gain = gained.imag() * gained.imag() / whole;
+        // Noise of a gain: N0·Σ|s|², N0 by this stretch without what its gain takes, and the error of the
+        // model's gain, which is independent of it, as in recursive residuals. The ratio has Fisher's law of
+        // (1, 2n − 2) degrees of freedom; (2n − 4)/(2n − 2) brings its mean to 1.
+        const double n0 = (m.power - std::norm(gained) / sent_power) / (stretch - 1);
+        const double gain_error = d_model->inverse[column::gain][column::gain].real();
+        const double variance = n0 / 2 * sent_power * (1 + sent_power * gain_error);
+        constexpr double to_mean_one = (2.0 * stretch - 4) / (2.0 * stretch - 2);
+        if (variance > 0) {
+            m.stretches = 1;
+            m.radial_gain = to_mean_one * gained.real() * gained.real() / variance;
+            m.tangential_gain = to_mean_one * gained.imag() * gained.imag() / variance;
+        }
     }
     d_stretch.moments = m;
 }

@@ -153,6 +153,8 @@ report watch::reporting::total(const window& w,
 loss_question watch::reporting::asked(const std::optional<shortfall>& at_the_input) const
 {
     loss_question question;
+    if (const auto fit = d_fit.solve(d_set))
+        question.gauged_n0 = fit->n0 / d_set.es();
     if (const auto n = d_at_input.symbols(); n > 0) {
         const double ln_ser = d_at_input.at(d_curve, 0).ln_errors - std::log(static_cast<double>(n));
         question.input_es_n0_db = es_n0_db_of(d_curve, ln_ser, d_at_input.highest_db());
