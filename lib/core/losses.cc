@@ -63,7 +63,7 @@ public:
     impairment full;
     std::vector<finding> found;
     /// Es/N0 of the noise alone, without any cause.
-    double noise_es_n0() const { return std::norm(d_gain) / (full.n0 * d_taken); }
+    double noise_es_n0() const { return std::norm(full.gain) / (full.n0 * d_taken); }
 
 private:
     bool beyond_chance(double exponential) const { return std::exp(-exponential) < loss_significance; }
@@ -197,20 +197,24 @@ private:
         const double variance = d_fit.n0 * d_fit.inverse[column::gain][column::gain].real() / 2;
         const double size = std::abs(d_left), angle = std::arg(d_left);
         // z² of one dimension is beyond chance where the exponential of a complex one at z²/2 is, nearly.
+        const auto rescale = [size](impairment& link) {
+            link.gain /= size;
+            link.n0 /= size * size;
+        };
+        const auto turn_back = [angle](impairment& link) { link.gain *= std::polar(1.0, -angle); };
         if (beyond_chance((size - 1) * (size - 1) / variance / 2))
-            found.push_back({cause::gain_error, std::pow(1 - 1 / size, 2), [size](impairment& link) {
-                                 link.gain /= size;
-                                 link.n0 /= size * size;
-                             }});
+            found.push_back({cause::gain_error, std::pow(1 - 1 / size, 2), rescale});
+        else
+            rescale(full);
         if (beyond_chance(angle * angle * size * size / variance / 2))
-            found.push_back({cause::phase_error, 2 - 2 * std::cos(angle), [angle](impairment& link) {
-                                 link.gain *= std::polar(1.0, -angle);
-                             }});
+            found.push_back({cause::phase_error, 2 - 2 * std::cos(angle), turn_back});
+        else
+            turn_back(full);
     }
 
     void find_noise()
     {
-        const double relative = full.n0 / std::norm(d_gain);
+        const double relative = full.n0 / std::norm(full.gain);
         const auto& m = d_moments;
         double foretold = 0;
         if (m.lag_one_norm > 0) {

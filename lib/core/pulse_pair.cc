@@ -44,7 +44,7 @@ pair_response response_of(double roll_off, double other)
     const double end = (1 + std::min(roll_off, other)) / 2;
     const std::array<double, 4> edges = {0, std::min(low, end), std::min(high, end), end};
     pair_response out{};
-    using rule = boost::math::quadrature::gauss<double, 15>;
+    using rule = boost::math::quadrature::gauss<double, 20>;
     for (std::size_t lag = 0; lag < out.size(); ++lag)
         for (std::size_t k = 0; k + 1 < edges.size(); ++k)
             if (edges[k + 1] > edges[k])

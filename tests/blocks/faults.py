@@ -44,24 +44,46 @@ def assert_counted_in_full(which, report, samples, reference, symbols=SYMBOLS):
     assert_account_adds_up(report, symbols)
 
 
+NOT_A_CAUSE = {"excess_noise", "interaction", "unexplained"}
+
+
+def costs(report):
+    """Cost in dB of each row of the losses, whose sum is the shortfall at the input."""
+    rows = {row["cause"]: row["cost_db"] for row in report["losses"]}
+    assert len(rows) == len(report["losses"])
+    assert abs(sum(rows.values()) - report["shortfall"]["input"]["db"]) < 1e-6
+    return rows
+
+
+def assert_explained(report, causes, premises, rest=0.1):
+    """These causes and failing premises and no others; `unexplained` within what the count allows, or `rest` of it all."""
+    rows = costs(report)
+    shortfall = report["shortfall"]["input"]
+    print({cause: round(cost, 3) for cause, cost in rows.items()}, "of", round(shortfall["db"], 3), "dB")
+    assert {cause for cause in rows.keys() - NOT_A_CAUSE if abs(rows[cause]) >= 0.03} == set(causes)
+    assert [p["name"] for p in report["premises"] if p["state"] == "fails"] == list(premises)
+    assert abs(rows["unexplained"]) < max(rest * abs(shortfall["db"]), (shortfall["db_high"] - shortfall["db_low"]) / 2)
+
+
 def iq_imbalance(samples, db=0.5):
     """Gain of I against Q of `db`, shared between the two."""
     g = 10 ** (db / 40)
     return samples.real * g + 1j * samples.imag / g
 
 
-# name, distortion that stands for the whole run, Es/N0: the aligner must not hide it (correction off)
+# name, distortion that stands for the whole run, Es/N0, the cause and the premises that must be named: the aligner
+# must not hide it (correction off)
 STANDING = {
-    "phase error of 8 degrees": (lambda s: s * np.exp(1j * np.radians(8)), 14.0),
-    "gain of 0.7": (lambda s: 0.7 * s, 14.0),
-    "I/Q imbalance of 0.5 dB": (iq_imbalance, 14.0),
+    "phase error of 8 degrees": (lambda s: s * np.exp(1j * np.radians(8)), 14.0, "phase_error", []),
+    "gain of 0.7": (lambda s: 0.7 * s, 14.0, "gain_error", []),
+    "I/Q imbalance of 0.5 dB": (iq_imbalance, 14.0, "iq_imbalance", ["no_image"]),
 }
 
 
 @pytest.mark.parametrize("name", STANDING)
 def test_standing_faults_cost_errors(name):
     which = halfplane.load_set(FIRN)
-    distort, es_n0_db = STANDING[name]
+    distort, es_n0_db, cause, premises = STANDING[name]
     report, samples, reference = run_link(
         which, es_n0_db, SYMBOLS, pattern=PATTERN, correction="off", fault=lambda s, k: distort(s).astype(np.complex64))
     assert_counted_in_full(which, report, samples, reference)
@@ -70,6 +92,7 @@ def test_standing_faults_cost_errors(name):
     clean = halfplane.predictor(which).ser(es_n0_db)
     assert report["total"]["ser"] > clean if name != "I/Q imbalance of 0.5 dB" else report["total"]["ser"] > 0.9 * clean
     assert report["total"]["slips"] == 0
+    assert_explained(report, [cause], premises)
     excluded = report["total"]["excluded"]
     assert excluded["slip"] == excluded["signal_lost"] == excluded["overflow"] == 0
 
@@ -91,6 +114,7 @@ def test_running_correction_takes_gain_and_phase_out():
     assert_counted_in_full(which, report, samples, reference)
     # memory 2000: the estimate's own noise costs less than 0.01 dB, far inside the interval
     assert_rate(report, halfplane.predictor(which).ser(14.0), simulated=1e12)
+    assert_explained(report, [], [])
 
 
 class echo:
@@ -117,6 +141,41 @@ def test_echo():
     seen = -10 * np.log10(1.01 * 10 ** (-es_n0_db / 10) + 0.01)
     assert abs(total["es_n0_db"] - seen) < 0.1
     assert report["shortfall"]["input"]["db_low"] > 0
+    # The echo's own noise colours the noise by 1 %: 0.04 dB.
+    rows = costs(report)
+    assert 0 <= rows.pop("coloured_noise", 0) < 0.06
+    report["losses"] = [row for row in report["losses"] if row["cause"] != "coloured_noise"]
+    report["shortfall"]["input"]["db"] = sum(rows.values())
+    assert_explained(report, ["echo"], ["no_memory"])
+
+
+def test_phase_noise():
+    """3 degrees rms on top of 17 dB: named, and worth what a plain simulation says it costs."""
+    which = halfplane.load_set(FIRN)
+    es_n0_db, rng = 17.0, np.random.default_rng(8)
+
+    def jitter(samples, _=None):
+        return (samples * np.exp(1j * np.radians(3) * rng.normal(size=len(samples)))).astype(np.complex64)
+
+    report, samples, reference = run_link(which, es_n0_db, SYMBOLS, pattern=PATTERN, fault=jitter)
+    assert_counted_in_full(which, report, samples, reference)
+    assert_explained(report, ["phase_noise"], ["circular"])
+    exact = halfplane.predictor(which)
+    simulated = expected_errors(which, es_n0_db, jitter)
+    worth = es_n0_db - float(exact.es_n0_db_for_ser(simulated))
+    assert abs(costs(report)["phase_noise"] - worth) < 0.1
+
+
+def test_fading_is_a_premise_that_fails():
+    """A gain that swings by 2 dB to either side, slower than the aligner follows: the report says what does not hold."""
+    which = halfplane.load_set(FIRN)
+    report, samples, reference = run_link(
+        which, 20.0, SYMBOLS, pattern=PATTERN, correction="held",
+        fault=lambda s, k: (s * 10 ** (np.sin(k / 3000) / 10)).astype(np.complex64))
+    assert_counted_in_full(which, report, samples, reference)
+    premises = {p["name"]: p for p in report["premises"]}
+    assert premises["steady_gain"]["state"] == "fails" and premises["steady_gain"]["effect_db"] > 1
+    assert premises["no_memory"]["state"] == premises["no_image"]["state"] == "holds"
 
 
 def test_bursts():
@@ -140,6 +199,9 @@ def test_bursts():
     assert total["dispersion"] > 5  # errors cluster, and the interval is wider for it
     binomial = stats.beta.ppf(0.975, total["symbol_errors"] + 1, total["judged"] - total["symbol_errors"])
     assert total["ser_high"] - total["ser"] > 1.5 * (binomial - total["ser"])
+    # What the curve of steady noise says of bursts is wrong, and the report says so.
+    assert [p["name"] for p in report["premises"] if p["state"] == "fails"] == ["gaussian", "steady_noise"]
+    assert max(costs(report), key=costs(report).get) == "excess_noise"
 
 
 def test_zeroed_samples():
@@ -154,6 +216,7 @@ def test_zeroed_samples():
     assert np.all(reference[gap[0]:gap[1]] >= 0), "symbols of the gap were left out"
     assert total["slips"] == 0 and total["excluded"]["signal_lost"] == 0
     assert 0.5 * 500 < total["symbol_errors"]
+    assert "steady_noise" in [p["name"] for p in report["premises"] if p["state"] == "fails"]
 
 
 def test_nonfinite_samples_are_counted():
@@ -184,7 +247,7 @@ def test_nothing_locks(name, which, pattern):
     total = report["total"]
     assert total["judged"] == 0 and total.get("symbol_errors", 0) == 0
     assert np.all(reference == -1)
-    assert "ser" not in total and "shortfall" not in report
+    assert "ser" not in total and "shortfall" not in report and "losses" not in report and "premises" not in report
     assert_account_adds_up(report, SYMBOLS)
     assert total["excluded"]["before_lock"] == SYMBOLS
     assert report.get("lock", {"state": "searching"})["state"] == "searching"
