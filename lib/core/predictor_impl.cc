@@ -103,12 +103,15 @@ double diagram::room(std::size_t owner, complex mean) const
 
 arrival diagram::arriving(std::size_t sent, complex mean, double weight) const
 {
-    const auto owner = regions.owner(mean);
-    if (d_whiten)
-        mean = apply(*d_whiten, mean);
+    constexpr double border = 1e-14;
+    const complex seen = d_whiten ? apply(*d_whiten, mean) : mean;
+    // Most means lie in the cell of what was sent; to look there first spares the search among all points.
+    const double in_own = room(sent, seen);
+    const bool at_home = in_own > border && std::isfinite(in_own); // infinite: no cell at all
+    const auto owner = at_home ? sent : regions.owner(mean);
+    mean = seen;
     // On a border the sides of the edges must agree with the owner: a step into its cell, far below what any
     // rate can show, settles it.
-    constexpr double border = 1e-14;
     if (room(owner, mean) < border) {
         const complex inward = regions.inside(owner) - mean;
         mean += 3 * border / std::abs(inward) * inward;
