@@ -26,6 +26,7 @@ _BLOCKS = (
 # Blocks in Python: where each stands, and the Debian packages it needs beyond what the others need.
 _SHOWING = {
     "link_page": ("page.block", "python3-aiohttp python3-prometheus-client"),
+    "link_panel": ("panel.block", "python3-pyqt5 python3-pyqtgraph"),
 }
 
 

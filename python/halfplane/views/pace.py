@@ -3,9 +3,10 @@
 
 from __future__ import annotations
 
-# Seconds between two drawings of a view at the least: those that a reader follows, and those that take long to draw.
-QUICK, SLOW = 0.25, 0.5
-INTERVALS = {"decision_map": SLOW, "curve": SLOW, "history": SLOW}
+# Seconds between two drawings of a view at the least: what a reader follows, what is read now and then, what takes long to
+# draw and changes little.
+QUICK, STEADY, SLOW = 0.25, 0.5, 1.0
+INTERVALS = {"account": STEADY, "losses": STEADY, "decision_map": SLOW, "curve": SLOW, "history": SLOW}
 
 
 class Pace:
@@ -16,7 +17,7 @@ class Pace:
     Times are in seconds of a clock of the caller's that never goes back. Not for several threads at once.
     """
 
-    def __init__(self, views, share: float = 0.04, saved: float = 0.5):
+    def __init__(self, views, share: float = 0.04, saved: float = 0.1):
         if not 0 < share <= 1:
             raise ValueError(f"share is {share}: a number in (0, 1] is wanted")
         self._views = list(views)
