@@ -193,6 +193,15 @@ report premises_of(const std::vector<premise>& premises)
     return rows;
 }
 
+report failing_of(const std::vector<premise>& premises)
+{
+    report names = report::array();
+    for (const auto& tested : premises)
+        if (tested.state == premise_state::fails)
+            names.push_back(tested.name);
+    return names;
+}
+
 report seconds_of(const second_counts& s)
 {
     report out;

@@ -49,6 +49,8 @@ report shortfall_of(const shortfall& s);
 report lock_of(const lock_status& lock);
 report losses_of(const std::vector<loss>& losses);
 report premises_of(const std::vector<premise>& premises);
+/// Names of those that fail.
+report failing_of(const std::vector<premise>& premises);
 report seconds_of(const second_counts& s);
 /// Frames of `now`, of those since `before` where there is one; nothing where none are counted.
 report frames_of(const trial_state& now, const frame_counts& before, const run_intervals& ends);

@@ -220,9 +220,13 @@ report watch::reporting::report_of(window&& w, bool final)
         if (found)
             if (auto ends_found = shortfall_of(*found); !ends_found.empty())
                 shortfalls[place] = std::move(ends_found);
+    d_explanation.refresh(d_predictor, d_curve, asked(input_shortfall), final);
+    // At the decision the curve is asked at a gauged Es/N0, which means what it says where the premises hold.
+    if (shortfalls.contains("decision"))
+        if (auto failing = failing_of(d_explanation.premises()); !failing.empty())
+            shortfalls["decision"]["doubted_by"] = std::move(failing);
     if (!shortfalls.empty())
         out["shortfall"] = std::move(shortfalls);
-    d_explanation.refresh(d_predictor, d_curve, asked(input_shortfall), final);
     if (d_explanation.symbols() > 0)
         out["explained_symbols"] = d_explanation.symbols();
     if (!d_explanation.losses().empty())

@@ -62,6 +62,7 @@ def assert_explained(report, causes, premises, rest=0.1):
     print({cause: round(cost, 3) for cause, cost in rows.items()}, "of", round(shortfall["db"], 3), "dB")
     assert {cause for cause in rows.keys() - NOT_A_CAUSE if abs(rows[cause]) >= 0.03} == set(causes)
     assert [p["name"] for p in report["premises"] if p["state"] == "fails"] == list(premises)
+    assert report["shortfall"]["decision"].get("doubted_by", []) == list(premises)
     assert abs(rows["unexplained"]) < max(rest * abs(shortfall["db"]), (shortfall["db_high"] - shortfall["db_low"]) / 2)
 
 
@@ -176,6 +177,9 @@ def test_fading_is_a_premise_that_fails():
     premises = {p["name"]: p for p in report["premises"]}
     assert premises["steady_gain"]["state"] == "fails" and premises["steady_gain"]["effect_db"] > 1
     assert premises["no_memory"]["state"] == premises["no_image"]["state"] == "holds"
+    decision = report["shortfall"]["decision"]
+    print("shortfall at the decision", decision)
+    assert "steady_gain" in decision["doubted_by"]
 
 
 def test_bursts():

@@ -29,6 +29,11 @@ TEST(Explanation, RowsByHand)
               R"({"name":"circular","p":0.0,"effect_db":1.5,"state":"fails"},)"
               R"({"name":"linear","state":"too_few"}])");
     EXPECT_EQ(losses_of({}).dump(), "[]");
+    EXPECT_EQ(failing_of({{"white", premise_state::holds, 0.5, 0.0},
+                          {"circular", premise_state::fails, 0.0, 1.5},
+                          {"linear", premise_state::too_few, std::nullopt, std::nullopt}})
+                  .dump(),
+              R"(["circular"])");
 }
 
 TEST(Explanation, EveryCauseHasAName)
