@@ -15,6 +15,7 @@ _BLOCKS = (
     "json_to_pmt",
     "link_log",
     "link_watch",
+    "llr_detector",
     "noise_at",
     "pmt_to_json",
     "point_detector",

@@ -8,8 +8,8 @@ from gnuradio import blocks, gr
 AWKWARD_CHUNKS = [None, 1, 7, 1023]
 
 SOURCES = {"s": blocks.vector_source_s, "b": blocks.vector_source_b, "c": blocks.vector_source_c}
-SINKS = {"s": blocks.vector_sink_s, "b": blocks.vector_sink_b, "c": blocks.vector_sink_c}
-TYPES = {"s": np.int16, "b": np.uint8, "c": np.complex64}
+SINKS = {"s": blocks.vector_sink_s, "b": blocks.vector_sink_b, "c": blocks.vector_sink_c, "f": blocks.vector_sink_f}
+TYPES = {"s": np.int16, "b": np.uint8, "c": np.complex64, "f": np.float32}
 
 
 def as_items(data, kind):
@@ -18,7 +18,7 @@ def as_items(data, kind):
 
 
 def run_through(block, data, kind_in, kind_out, chunk=None):
-    """Everything that `block` makes of `data`; kinds are 's' short, 'b' byte, 'c' complex."""
+    """Everything that `block` makes of `data`; kinds: s short, b byte, c complex, f float (out)."""
     source, sink = SOURCES[kind_in](as_items(data, kind_in)), SINKS[kind_out]()
     if chunk:
         block.set_max_noutput_items(chunk)

@@ -5,6 +5,7 @@
 
 #include <gnuradio/halfplane/aligner.h>
 #include <gnuradio/halfplane/link_watch.h>
+#include <gnuradio/halfplane/llr_detector.h>
 #include <gnuradio/halfplane/noise_at.h>
 #include <gnuradio/halfplane/point_detector.h>
 #include <gnuradio/halfplane/point_mapper.h>
@@ -31,6 +32,7 @@ TEST(Threads, SettersWhileRunning)
     const auto align = aligner::make(set, "draw:1");
     const auto watch = link_watch::make(set, "draw:1", 1000);
     const auto detect = point_detector::make(set, "indices");
+    const auto soft = llr_detector::make(set, 0.1);
     graph->connect(source, 0, map, 0);
     graph->connect(map, 0, noise, 0);
     graph->connect(noise, 0, align, 0);
@@ -38,6 +40,8 @@ TEST(Threads, SettersWhileRunning)
     graph->connect(align, 1, watch, 1);
     graph->connect(noise, 0, detect, 0);
     graph->connect(detect, 0, gr::blocks::null_sink::make(sizeof(std::int16_t)), 0);
+    graph->connect(noise, 0, soft, 0);
+    graph->connect(soft, 0, gr::blocks::null_sink::make(sizeof(float)), 0);
     graph->msg_connect(noise, "input", watch, "input");
 
     graph->start();
@@ -49,12 +53,16 @@ TEST(Threads, SettersWhileRunning)
     for (; turns < 300 || judged() < 200000; ++turns) {
         noise->set_es_n0_db(14.0 + 0.1 * static_cast<double>(turns % 10));
         detect->set_n0(0.1 + 0.01 * static_cast<double>(turns % 7));
-        if (turns % 10 == 0)
+        soft->set_n0(0.1 + 0.01 * static_cast<double>(turns % 7));
+        if (turns % 10 == 0) {
             detect->set_signal_set(turns % 20 ? set : other);
+            soft->set_signal_set(set);
+        }
         (void)align->state();
         (void)align->slips();
         (void)noise->n0();
         (void)detect->n0();
+        (void)soft->n0();
         std::this_thread::yield();
     }
     graph->stop();

@@ -13,6 +13,7 @@ PYBIND11_MODULE(blocks_python, m)
     bind_aligner(m);
     bind_link_log(m);
     bind_link_watch(m);
+    bind_llr_detector(m);
     bind_noise_at(m);
     bind_point_detector(m);
     bind_point_mapper(m);

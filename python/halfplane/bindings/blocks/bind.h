@@ -7,6 +7,7 @@
 void bind_aligner(pybind11::module& m);
 void bind_link_log(pybind11::module& m);
 void bind_link_watch(pybind11::module& m);
+void bind_llr_detector(pybind11::module& m);
 void bind_noise_at(pybind11::module& m);
 void bind_point_detector(pybind11::module& m);
 void bind_point_mapper(pybind11::module& m);
