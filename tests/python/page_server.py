@@ -346,3 +346,16 @@ def test_the_server_needs_no_gnu_radio():
         "sys.exit('gnuradio.gr' in sys.modules or 'pmt' in sys.modules)"
     )
     assert subprocess.run([sys.executable, "-c", code], timeout=60).returncode == 0
+
+
+def test_the_terminal_follows_the_page():
+    """`halfplane watch URL --token …` reads what the page offers."""
+    import subprocess
+
+    from command import BUILD
+
+    with serving(token=TOKEN) as server:
+        server.publish({**FULL, "schema": "halfplane/report/1", "time": "2026-12-01T12:00:00Z"})
+        done = subprocess.run([str(BUILD / "halfplane"), "watch", server.url, "--token", TOKEN, "--once"], capture_output=True, text=True, timeout=60)
+    assert done.returncode == 0, done.stderr
+    assert "firn-12" in done.stdout and "Locked" in done.stdout
