@@ -285,7 +285,7 @@ def test_memory_does_not_grow_with_the_log(tmp_path):
         assert read.logs[0].reports == number and isinstance(read.trace, views.Trace)
         return used
 
-    assert peak(4000) < 1.3 * peak(1000)
+    assert peak(2000) < 1.3 * peak(700)
 
 
 def test_overall_is_the_worst():

@@ -27,7 +27,8 @@ code{font:12px/1.4 'DejaVu Sans Mono',ui-monospace,monospace;overflow-wrap:anywh
 figure{margin:0 0 20px;overflow-x:auto}figcaption{font-size:13px;color:var(--hp-quiet);margin-top:4px}
 figure svg{display:block;max-width:100%;height:auto}
 .pair{display:flex;flex-wrap:wrap;gap:10px 24px}.pair>*{flex:1 1 400px}
-section{overflow-x:auto}
+section{overflow-x:auto}thead th:first-child{min-width:7em}
+@media screen and (max-width:640px){figure svg{max-width:none}}
 @page{size:A4;margin:12mm 13mm 14mm;@bottom-right{content:counter(page) " / " counter(pages);font:9px FONT}}
 @media print{html{font-size:11.5px}body{max-width:none;padding:0}nav{display:none}h1{font-size:20px}
 h2{font-size:15px;break-after:avoid;margin:18px 0 8px}.point{break-before:page}table{break-inside:auto}figure{margin:0 0 10px}figcaption{font-size:9.5px;margin-top:2px}figure,tr{break-inside:avoid}section,figure{overflow:visible}
