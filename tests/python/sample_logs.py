@@ -10,17 +10,20 @@ from gnuradio.halfplane import load_set
 DIGEST = "5f" * 32
 
 
-def settings(what=FIRN):
+def settings_of(signal_set, detector="ml"):
     """As watch::settings() writes them."""
-    signal_set = load_set(what)
     found = {
         "set": signal_set.name, "points": [[p.real, p.imag] for p in signal_set.points], "labels": signal_set.label_strings,
-        "pattern": "draw:2026", "law": "awgn", "detector": "ml", "decisions": "own", "confidence": 0.95, "window": 10000,
+        "pattern": "draw:2026", "law": "awgn", "detector": detector, "decisions": "own", "confidence": 0.95, "window": 10000,
         "symbol_rate": 50000.0, "target": "ser:1e-3", "max_excluded": 0.001,
     }  # fmt: skip
     if not signal_set.uniform:
         found["priors"] = list(signal_set.priors)
     return found
+
+
+def settings():
+    return settings_of(load_set(FIRN))
 
 
 def settings_line(of=None, digest=DIGEST):
