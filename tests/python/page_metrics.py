@@ -35,7 +35,7 @@ def test_the_answer_is_openmetrics():
     with serving() as server:
         server.publish(FULL)
         status, headers, body = get(server, "/metrics")
-    assert status == 200 and headers["Content-Type"] == "application/openmetrics-text; version=0.0.1; charset=utf-8"
+    assert status == 200 and headers["Content-Type"].startswith("application/openmetrics-text; version=")
     assert body.endswith(b"# EOF\n")
     found = families(body.decode())
     assert all(name.startswith("halfplane_") for name in found)

@@ -1,6 +1,7 @@
 # SPDX-License-Identifier: GPL-3.0-or-later
 """The page's server: what it answers, to whom, and what it refuses; many clients, slow ones, and a long run."""
 
+import asyncio
 import contextlib
 import json
 import socket
@@ -18,6 +19,7 @@ from views import SETTINGS
 from gnuradio.halfplane import views
 from gnuradio.halfplane.page import limits
 from gnuradio.halfplane.page.server import Server
+from gnuradio.halfplane.page.stream import Client
 
 TOKEN = "avalanche-0123456789"
 FULL = {**sample_reports.full(), "sequence": 0, "settings": SETTINGS, "settings_sha256": "00"}
@@ -215,6 +217,27 @@ def test_a_client_that_does_not_read_holds_up_nobody(server, monkeypatch):
         time.sleep(0.02)
     stream.close()
     deaf.close()
+
+
+def test_a_client_keeps_the_newest_of_each_view_only():
+    async def give_and_take():
+        client = Client("wide")
+        for k in range(10_000):
+            client.give("ladder", b"l%d;" % k)
+            client.give("account", b"a%d;" % k)
+        client.give("ladder", b"last;")
+        return await client.take()
+
+    assert asyncio.run(give_and_take()) == b"a9999;last;"
+
+
+def test_what_a_live_page_sends_on_is_dropped(server):
+    stream = Stream(server)
+    stream.socket.sendall(b"GET / HTTP/1.1\r\nHost: localhost\r\n\r\n" * 5000)
+    time.sleep(0.3)
+    server.publish({**FULL, "sequence": 7})
+    assert json.loads(stream.until("summary"))["sequence"] == 7
+    stream.close()
 
 
 @pytest.mark.parametrize("data, status", [
