@@ -14,6 +14,7 @@ namespace {
 // rounding of (x − x0)·sx in float: at most width·2^-23 ≤ 2.5e-4 for the widest main grid.
 constexpr double overlap = 1e-3;
 constexpr std::size_t squares_a_point = 256;
+constexpr std::size_t squares_behind_near = 1u << 14;
 constexpr unsigned widest = 2048;
 constexpr unsigned child_squares = 8;
 constexpr std::size_t long_list = 6; // beyond, a child frame is wanted
@@ -37,26 +38,35 @@ struct candidate_map::workshop {
     double weight = 1; // of the frame being filled: the chance that a sample falls there, roughly
 };
 
-candidate_map::candidate_map(const signal_set& set, const std::vector<double>& bias)
+namespace {
+std::vector<point_metric> metrics_of(const signal_set& set, const std::vector<double>& bias)
 {
-    double size = 0, constant = 0;
+    std::vector<point_metric> metrics;
     for (std::size_t i = 0; i < set.size(); ++i) {
         const complex s = set.points()[i];
-        d_metrics.push_back({s.real(), s.imag(), -std::norm(s) / 2 + (bias.empty() ? 0.0 : bias[i])});
-        size = std::max({size, std::abs(s.real()), std::abs(s.imag())});
-        constant = std::max(constant, std::abs(d_metrics.back().constant));
+        metrics.push_back({s.real(), s.imag(), -std::norm(s) / 2 + (bias.empty() ? 0.0 : bias[i])});
     }
-    // Each metric carries at most three roundings; two metrics, and as much again for the test itself, with
-    // room.
-    constexpr double roundings = 32 * std::numeric_limits<double>::epsilon();
-    d_blur_slope = roundings * size;
-    d_blur_constant = roundings * constant;
+    return metrics;
+}
+} // namespace
 
+candidate_map::candidate_map(const signal_set& set, const std::vector<double>& bias)
+    : d_metrics(metrics_of(set, bias)), d_rules(d_metrics)
+{
+    double size = 0, constant = 0;
+    for (const point_metric& m : d_metrics) {
+        size = std::max({size, std::abs(m.re), std::abs(m.im)});
+        constant = std::max(constant, std::abs(m.constant));
+    }
     d_view.size = set.size();
     d_view.scan_all = !(size < largest_magnitude && size > 1 / largest_magnitude && constant < 1e200);
     if (!d_view.scan_all) {
-        for (std::size_t squares = std::clamp<std::size_t>(squares_a_point * set.size(), 1024, 1u << 17);;
-             squares /= 4) {
+        std::size_t wanted = std::clamp<std::size_t>(squares_a_point * set.size(), 1024, 1u << 17);
+        d_near = std::make_unique<near_map>(d_metrics, d_rules, main_side(wanted));
+        d_view.near = d_near->view();
+        if (d_view.near.pages) // few samples are left to the main grid
+            wanted = squares_behind_near;
+        for (std::size_t squares = wanted;; squares /= 4) {
             workshop tools;
             d_tools = &tools;
             d_frames.clear(), d_entries.clear(), d_links.clear(), d_lists.clear();
@@ -93,20 +103,28 @@ std::size_t candidate_map::add_frame(const square_frame& f)
     return d_frames.size() - 1;
 }
 
-void candidate_map::lay_main_grid(std::size_t squares_wanted)
+double candidate_map::main_margin(const box& hull) const
 {
-    const double infinity = std::numeric_limits<double>::infinity();
-    box hull{infinity, -infinity, infinity, -infinity};
-    for (const point_metric& m : d_metrics) {
-        hull.x0 = std::min(hull.x0, m.re), hull.x1 = std::max(hull.x1, m.re);
-        hull.y0 = std::min(hull.y0, m.im), hull.y1 = std::max(hull.y1, m.im);
-    }
     const double wide = hull.x1 - hull.x0, high = hull.y1 - hull.y0;
     const double count = static_cast<double>(d_metrics.size());
-    const double spacing = std::max(std::sqrt(wide * high / count), std::max(wide, high) / count);
-    const double margin = 1.5 * spacing;
-    const double side = std::max(std::sqrt((wide + 2 * margin) * (high + 2 * margin) / squares_wanted),
-                                 (std::max(wide, high) + 2 * margin) / (widest - 4));
+    return 1.5 * std::max(std::sqrt(wide * high / count), std::max(wide, high) / count);
+}
+
+double candidate_map::main_side(std::size_t squares_wanted) const
+{
+    const box hull = hull_of(d_metrics);
+    const double beside = 2 * main_margin(hull);
+    const double wide = hull.x1 - hull.x0 + beside, high = hull.y1 - hull.y0 + beside;
+    return std::max(std::sqrt(wide * high / static_cast<double>(squares_wanted)),
+                    std::max(wide, high) / (widest - 4));
+}
+
+void candidate_map::lay_main_grid(std::size_t squares_wanted)
+{
+    const box hull = hull_of(d_metrics);
+    const double wide = hull.x1 - hull.x0, high = hull.y1 - hull.y0;
+    const double margin = main_margin(hull);
+    const double side = main_side(squares_wanted);
     // Half a square of shift puts the axes of the common symmetric sets inside a square instead of between
     // two.
     const auto squares = [&](double extent) {
@@ -140,6 +158,7 @@ void candidate_map::lay_main_grid(std::size_t squares_wanted)
         all[i] = static_cast<std::uint16_t>(i);
     d_endless = false;
     // The outermost ring stays "outside": clamping sends everything beyond, and NaN, there.
+    const double infinity = std::numeric_limits<double>::infinity();
     fill(frame, {infinity, -infinity, infinity, -infinity}, 1, width - 2, 1, height - 2, all);
 }
 
@@ -242,7 +261,7 @@ void candidate_map::lay_children()
             spread = std::max({spread,
                                std::abs(d_metrics[i].re - d_metrics[crowd.list[0]].re),
                                std::abs(d_metrics[i].im - d_metrics[crowd.list[0]].im)});
-        if (spread * (where.x1 - where.x0 + where.y1 - where.y0) < 64 * blur(where))
+        if (spread * (where.x1 - where.x0 + where.y1 - where.y0) < 64 * d_rules.blur(where))
             continue; // rounding alone keeps these together
         if (d_links.size() >= detect_view::max_links) {
             d_overflow = true;
@@ -283,55 +302,9 @@ std::uint16_t candidate_map::link_of(const candidates& list)
     return id;
 }
 
-double candidate_map::blur(const box& where) const
+candidates candidate_map::prune(const box& where, const candidates& in) const
 {
-    const double x = std::max(std::abs(where.x0), std::abs(where.x1));
-    const double y = std::max(std::abs(where.y0), std::abs(where.y1));
-    return d_blur_slope * (x + y) + d_blur_constant;
-}
-
-candidate_map::candidates candidate_map::prune(const box& where, const candidates& in) const
-{
-    const double mx = (where.x0 + where.x1) / 2, hx = (where.x1 - where.x0) / 2;
-    const double my = (where.y0 + where.y1) / 2, hy = (where.y1 - where.y0) / 2;
-    const double blurred = blur(where);
-
-    const auto winner = [&](double x, double y, const candidates& among) {
-        std::uint16_t best = among[0];
-        double top = -std::numeric_limits<double>::infinity();
-        for (const std::uint16_t i : among) {
-            const point_metric& m = d_metrics[i];
-            const double value = x * m.re + y * m.im + m.constant;
-            if (value > top)
-                top = value, best = i;
-        }
-        return best;
-    };
-    candidates left = in, kept;
-    const auto strike = [&](std::uint16_t by) {
-        const point_metric& w = d_metrics[by];
-        kept.clear();
-        for (const std::uint16_t j : left) {
-            const point_metric& m = d_metrics[j];
-            const double dx = w.re - m.re, dy = w.im - m.im;
-            const double lead =
-                dx * mx + dy * my + (w.constant - m.constant) - std::abs(dx) * hx - std::abs(dy) * hy;
-            bool beaten = lead > blurred;
-            if (beaten && d_endless) // and the lead must not shrink on the way outwards
-                beaten =
-                    dx * (mx - d_view.cx) + dy * (my - d_view.cy) - std::abs(dx) * hx - std::abs(dy) * hy >=
-                    blurred;
-            if (j == by || !beaten)
-                kept.push_back(j);
-        }
-        left.swap(kept);
-    };
-    strike(winner(mx, my, left));
-    for (const double sx : {-1.0, 1.0})
-        for (const double sy : {-1.0, 1.0})
-            if (left.size() > 1)
-                strike(winner(mx + sx * hx, my + sy * hy, left));
-    return left;
+    return d_endless ? d_rules.prune_endless(where, in, d_view.cx, d_view.cy) : d_rules.prune(where, in);
 }
 
 } // namespace halfplane::kernels

@@ -3,11 +3,14 @@
 // it.
 #pragma once
 
+#include "contest.h"
 #include "detect_view.h"
 #include "halfplane/signal_set.h"
+#include "near_map.h"
 
 #include <cstddef>
 #include <cstdint>
+#include <memory>
 #include <vector>
 
 namespace halfplane::kernels {
@@ -19,9 +22,7 @@ namespace halfplane::kernels {
  * - *shells* around it, each twice as wide as the one before, the last of them without end;
  * - *child frames* of 8 × 8 squares inside a square where many points compete.
  *
- * A point is struck from a square's list when one other point beats it all over the square by more than
- * double precision can blur. The metric is linear in the sample, so its least lead over a rectangle stands at
- * a corner.
+ * Where points lie too close together for the main grid, a near_map goes ahead of them.
  */
 class candidate_map
 {
@@ -33,11 +34,8 @@ public:
     detect_view view() const noexcept;
 
 private:
-    struct box {
-        double x0, x1, y0, y1;
-    };
-    using candidates = std::vector<std::uint16_t>;
-
+    double main_margin(const box& hull) const;
+    double main_side(std::size_t squares_wanted) const;
     void lay_main_grid(std::size_t squares_wanted);
     void lay_shells();
     void lay_children();
@@ -49,12 +47,13 @@ private:
               unsigned ny,
               const candidates& in);
     void settle(std::size_t square, const box& where, const candidates& list);
-    double blur(const box& where) const;
     candidates prune(const box& where, const candidates& in) const;
     std::uint16_t link_of(const candidates& list);
     std::size_t add_frame(const square_frame& f);
 
     std::vector<point_metric> d_metrics;
+    contest d_rules;
+    std::unique_ptr<near_map> d_near;
     std::vector<square_frame> d_frames;
     std::vector<std::uint16_t> d_entries;
     std::vector<candidate_link> d_links;
@@ -62,8 +61,7 @@ private:
     struct workshop;
     workshop* d_tools = nullptr; // while building only
     detect_view d_view{};
-    double d_blur_slope = 0, d_blur_constant = 0; // what rounding can do to a difference of two metrics
-    bool d_endless = false;                       // the frame being filled reaches to infinity
+    bool d_endless = false; // the frame being filled reaches to infinity
     bool d_overflow = false;
 };
 

@@ -88,6 +88,17 @@ inline std::uint16_t shell_entry(const detect_view& v, double x, double y)
     return v.entries[v.frames[v.first_shell + which].first + ix + iy * shell_squares];
 }
 
+/// Entry of a sample in the main grid.
+inline std::uint16_t main_entry(const detect_view& v, float x, float y)
+{
+    float tx = (x - v.x0) * v.sx, ty = (y - v.y0) * v.sy;
+    tx = tx > 0 ? tx : 0; // NaN too
+    ty = ty > 0 ? ty : 0;
+    tx = tx < v.last_x ? tx : v.last_x;
+    ty = ty < v.last_y ? ty : v.last_y;
+    return v.entries[static_cast<std::uint32_t>(tx) + static_cast<std::uint32_t>(ty) * v.width];
+}
+
 /// Follows an open entry to a decision.
 inline std::uint16_t resolve(const detect_view& v, std::uint16_t entry, float in_x, float in_y)
 {
@@ -107,6 +118,52 @@ inline std::uint16_t resolve(const detect_view& v, std::uint16_t entry, float in
     return entry;
 }
 
+constexpr std::size_t block = 512;
+
+/// Decisions by the near map, n ≤ block. Nothing branches on the data but the rare samples left over.
+inline void decide_near(const detect_view& v, const float* in, std::uint16_t* out, std::size_t n)
+{
+    const near_view& g = v.near;
+    constexpr std::int32_t within_page = (1 << near_view::page_bits) - 1;
+    std::uint32_t page[block], within[block];
+    std::uint16_t undecided[block];
+    const float x0 = g.x0, y0 = g.y0, scale = g.scale, last_x = g.last_x, last_y = g.last_y;
+    const std::int32_t wide = static_cast<std::int32_t>(g.wide);
+    for (std::size_t k = 0; k < n; ++k) {
+        float tx = (in[2 * k] - x0) * scale, ty = (in[2 * k + 1] - y0) * scale;
+        tx = tx > 0 ? tx : 0; // NaN too
+        ty = ty > 0 ? ty : 0;
+        tx = tx < last_x ? tx : last_x;
+        ty = ty < last_y ? ty : last_y;
+        const std::int32_t ix = static_cast<std::int32_t>(tx), iy = static_cast<std::int32_t>(ty);
+        page[k] =
+            static_cast<std::uint32_t>((ix >> near_view::page_bits) + (iy >> near_view::page_bits) * wide);
+        within[k] =
+            static_cast<std::uint32_t>((ix & within_page) | (iy & within_page) << near_view::page_bits);
+    }
+    for (std::size_t k = 0; k < n; ++k) {
+        const std::uint32_t p = g.pages[page[k]];
+        page[k] = (p >> 1) + (within[k] & (0u - (p & 1u)));
+    }
+    std::size_t open = 0;
+    for (std::size_t k = 0; k < n; ++k) {
+        const std::uint16_t entry = g.entries[page[k]];
+        out[k] = entry;
+        undecided[open] = static_cast<std::uint16_t>(k);
+        open += entry >> 15;
+    }
+    for (std::size_t j = 0; j < open; ++j) {
+        const std::size_t k = undecided[j];
+        const std::uint16_t entry = out[k];
+        const float x = in[2 * k], y = in[2 * k + 1];
+        out[k] = entry == near_view::elsewhere ? resolve(v, main_entry(v, x, y), x, y)
+                                               : best_of_few(v,
+                                                             g.lists[entry - near_view::open].index,
+                                                             static_cast<double>(x),
+                                                             static_cast<double>(y));
+    }
+}
+
 } // namespace detect_detail
 
 void decide(const detect_view& v, const float* in, std::uint16_t* out, std::size_t count)
@@ -120,7 +177,14 @@ void decide(const detect_view& v, const float* in, std::uint16_t* out, std::size
         }
         return;
     }
-    constexpr std::size_t block = 512;
+    if (v.near.pages) {
+        for (; count > 0;) {
+            const std::size_t n = count < block ? count : block;
+            decide_near(v, in, out, n);
+            in += 2 * n, out += n, count -= n;
+        }
+        return;
+    }
     std::uint32_t square[block];
     std::uint16_t undecided[block];
     for (; count > 0;) {

@@ -27,6 +27,30 @@ struct candidate_link {
     std::uint16_t few[few_size];
 };
 
+/// Two to four candidates; the last one repeated.
+struct few_candidates {
+    static constexpr std::size_t size = 4;
+    std::uint16_t index[size];
+};
+
+/*!
+ * A fine grid kept in pages where samples fall (near_map.h). Square (ix, iy), in float as in detect_view, is
+ * in page (ix/8, iy/8); `pages` holds the place of the page's first entry, doubled, plus 1, or without the 1
+ * that of the one entry which its 64 squares share.
+ */
+struct near_view {
+    static constexpr unsigned page_bits = 3;
+    // An entry below `open` is the decision itself; open + k leads to lists[k]; `elsewhere` to the main grid.
+    static constexpr std::uint16_t open = 0x8000;
+    static constexpr std::uint16_t elsewhere = 0xffff;
+
+    const std::uint32_t* pages; // null: no such grid
+    const std::uint16_t* entries;
+    const few_candidates* lists;
+    float x0, y0, scale, last_x, last_y;
+    std::uint32_t wide; // pages
+};
+
 struct detect_view {
     // An entry below `open` is the decision itself; open + k leads to links[k]; `outside` to the shells.
     static constexpr std::uint16_t open = 0x8000;
@@ -39,6 +63,7 @@ struct detect_view {
     const candidate_link* links;
     const std::uint16_t* lists;
     const square_frame* frames;
+    near_view near; // asked first where it is there
 
     // Main grid: entries[0 …], its coordinates in float.
     float x0, y0, sx, sy, last_x, last_y;

@@ -194,6 +194,25 @@ TEST(detect, equals_brute_force_on_large_sets)
         expect_equal_decisions(set, point_decider(set), 40000, ++seed);
 }
 
+TEST(detect, equals_brute_force_where_points_lie_close)
+{
+    // Sets that get a fine grid of pages, with and without priors.
+    unsigned seed = 250;
+    const std::pair<signal_set, std::size_t> cases[] = {{sample_sets::ring(64), 9000000},
+                                                        {sample_sets::ring(256), 900000},
+                                                        {sample_sets::ring(1024), 270000},
+                                                        {sample_sets::random(1024, 7), 270000},
+                                                        {sample_sets::random(4096, 8), 90000}};
+    for (const auto& [set, count] : cases)
+        expect_equal_decisions(set, point_decider(set), count, ++seed);
+    const signal_set off_centre = sample_sets::ring(256).translated({30, -7}).renamed("ring off centre");
+    expect_equal_decisions(off_centre, point_decider(off_centre), 450000, ++seed);
+    const signal_set shaped =
+        sample_sets::with_shaped_priors(sample_sets::ring(256).translated({0.5, 0}), 3.0);
+    for (const double es_n0 : {10.0, 1e3, 1e5})
+        expect_equal_decisions(shaped, point_decider(shaped, shaped.es() / es_n0), 270000, ++seed);
+}
+
 TEST(detect, equals_brute_force_with_priors)
 {
     unsigned seed = 300;
