@@ -8,7 +8,7 @@ root=$(cd "$(dirname "${BASH_SOURCE[0]}")/.." && pwd)
 packages_to_build=(gnuradio-dev cmake make g++ ccache nlohmann-json3-dev libboost-dev
     python3-numpy python3-click python3-rich python3-matplotlib)
 packages_to_test=("${packages_to_build[@]}" libgtest-dev libbenchmark-dev clang-format
-    python3-pytest python3-pypdf weasyprint python3-scipy python3-mpmath
+    mypy python3-pytest python3-pypdf weasyprint python3-scipy python3-mpmath
     python3-aiohttp python3-prometheus-client python3-pyqt5 python3-pyqtgraph chromium chromium-driver python3-selenium python3-yaml)
 
 say() { printf '== %s\n' "$*"; }

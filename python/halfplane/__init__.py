@@ -6,8 +6,13 @@ The core (sets, rates, intervals, patterns) is here at once. The GNU Radio block
 is first asked for, so that a script or command that only computes starts fast and runs without GNU Radio.
 """
 
+from typing import TYPE_CHECKING
+
 from .captions import set_caption  # noqa: F401
 from .core_python import *  # noqa: F401,F403
+
+if TYPE_CHECKING:
+    from .blocks_python import *  # noqa: F401,F403
 
 # Names that live in blocks_python, one a block.
 _BLOCKS = (

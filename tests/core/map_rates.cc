@@ -141,6 +141,19 @@ TEST(MapRates, APointWithoutACellFacesAllAndAlwaysErrs)
     EXPECT_EQ(p.facing(from_db(30), 0), (std::vector<std::size_t>{1}));
 }
 
+TEST(MapRates, AllButOnePriorTiny)
+{
+    // Three rare points round a frequent one: at low Es/N0 they have no cells, and the rate is what they are
+    // sent.
+    const double rare = 1e-12;
+    const signal_set four(
+        {{0, 0}, {1, 0}, {-0.5, 0.8}, {-0.5, -0.8}}, {0, 1, 2, 3}, 2, {1 - 3 * rare, rare, rare, rare});
+    const auto r = predictor(four).at(four.es()).exact; // N0 = 1
+    EXPECT_NEAR(r.ser / (3 * rare), 1, 1e-11);
+    EXPECT_EQ(r.ser_by_point[1], 1);
+    EXPECT_LT(r.ser_by_point[0], 1e-11);
+}
+
 TEST(MapRates, MapIsNeverWorseThanNearestPoint)
 {
     std::mt19937 draw(3);

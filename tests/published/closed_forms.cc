@@ -72,6 +72,8 @@ TEST(ClosedForms, SerAndBerOfPskAndQamUnderEveryLaw)
         std::string at;
     };
     std::map<std::string, worst> summary;
+    double worst_inverse = 0;
+    int inverses = 0;
     std::map<std::string, predictor> predictors;
     const auto table = read_table("closed_forms.csv");
     ASSERT_GE(table.size(), 500u);
@@ -102,11 +104,27 @@ TEST(ClosedForms, SerAndBerOfPskAndQamUnderEveryLaw)
             kind.smallest = std::min(kind.smallest, expected);
         }
         EXPECT_LE(error, bound) << key << " " << row[2] << " at " << row[3] << " dB";
+        if (ln_expected > std::log(1e-280)) {
+            // The inverse, from the published rate back to its Es/N0: an error of the rate moves it by
+            // 1/slope.
+            const double rate = std::strtod(row[4].c_str(), nullptr);
+            const auto found = row[2] == "ser" ? p.es_n0_for_ser(rate) : p.es_n0_for_ber(rate);
+            ASSERT_TRUE(found) << key << " " << row[2] << " " << rate;
+            const double decades =
+                row[2] == "ser" ? p.ser_decades_per_db(es_n0) : p.ber_decades_per_db(es_n0);
+            const double slope = std::abs(10 * decades); // d ln P / d ln(Es/N0)
+            const double off = std::abs(std::log(*found / es_n0));
+            EXPECT_LE(off, 2e-12 + bound / slope) << key << " " << row[2] << " back from " << rate;
+            worst_inverse = std::max(worst_inverse, off / (1 + 1 / slope));
+            ++inverses;
+        }
         if (error >= kind.error) {
             kind.error = error;
             kind.at = row[1] + " at " + row[3] + " dB";
         }
     }
+    std::printf("%d inverses, worst error %.1e of Es/N0 (times 1 + 1/slope)\n", inverses, worst_inverse);
+    EXPECT_GT(inverses, 400);
     for (const auto& [kind, w] : summary)
         std::printf("%-32s %3d cases, worst error %.1e at %s, down to %.0e\n",
                     kind.c_str(),

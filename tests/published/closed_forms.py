@@ -93,10 +93,26 @@ def impulsive(figure, law, m, g):
     raise ArithmeticError("class A did not settle")
 
 
-def emit(law, kind, m, what, db):
+def value_at(law, kind, m, what, db):
     g = mp.mpf(10) ** (mp.mpf(db) / 10)
     figure = {("psk", "ser"): psk_ser, ("qam", "ser"): qam_ser, ("qam", "ber"): qam_ber}[kind, what]
-    value = impulsive(figure, law, m, g) if law.startswith("impulsive") else figure(tail_of(law), m, g)
+    return impulsive(figure, law, m, g) if law.startswith("impulsive") else figure(tail_of(law), m, g)
+
+
+def deepest_level(kind, m, what="ser"):
+    """The highest multiple of 1/64 dB (a number that a double holds) at which the rate over AWGN is still 1e-290."""
+    low, high = -10 * 64, 130 * 64
+    while high - low > 1:
+        middle = (low + high) // 2
+        if value_at("awgn", kind, m, what, mp.mpf(middle) / 64) >= mp.mpf("1e-290"):
+            low = middle
+        else:
+            high = middle
+    return low / 64
+
+
+def emit(law, kind, m, what, db):
+    value = value_at(law, kind, m, what, db)
     if value < SMALLEST.get(law, mp.mpf("1e-290")):
         return False
     print(f"{law},{kind}:{m},{what},{db},{mp.nstr(value, 18, min_fixed=0, max_fixed=0)},{mp.nstr(mp.log(value), 18)}",
@@ -117,6 +133,8 @@ def main():
         for db in levels(-10, 120, step):
             if not emit("awgn", kind, m, what, db):
                 break
+        # At this depth BER is SER over a few bits, and 4/64 dB are seven powers of e.
+        emit("awgn", kind, m, what, deepest_level(kind, m, "ser") - (4 / 64 if what == "ber" else 0))
     for law in ("rayleigh", "rician:6", "rician:0.5", "rician:20", "nakagami:0.5", "nakagami:2.7", "rayleigh*2",
                 "rayleigh*4", "rician:3*3", "nakagami:1.5*8"):
         for kind, m, what in (("psk", 2, "ser"), ("psk", 8, "ser"), ("qam", 64, "ser"), ("qam", 16, "ber")):
