@@ -7,11 +7,11 @@ import time
 
 import pytest
 import sample_reports
+from drawn import number
 from page_server import FULL, TOKEN, serving
 from selenium import webdriver
 from selenium.webdriver.chrome.service import Service
 from selenium.webdriver.common.keys import Keys
-from views import number
 
 from gnuradio.halfplane import views
 from gnuradio.halfplane.views import themes, words

@@ -13,8 +13,9 @@ os.environ["QT_QPA_PLATFORM"] = "offscreen"
 import numpy as np
 import pytest
 import sample_reports
+from drawn import number
 from PyQt5 import QtCore, QtGui, QtTest, QtWidgets
-from views import SETTINGS, number
+from views import SETTINGS
 
 from gnuradio.halfplane import views
 from gnuradio.halfplane.panel.widget import Panel
