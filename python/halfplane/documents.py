@@ -100,9 +100,18 @@ def require(predictor, kind, target, rung):
     }
 
 
-def counted_row(predictor, es_n0_db, counts, confidence=0.95):
-    """One row of `simulate`: a tally beside the exact rates."""
-    exact = {"ser": predictor.ser(es_n0_db), "ber": predictor.ber(es_n0_db)}
+def _predicted(predictor, es_n0_db, means):
+    """Exact rates with points received at `means` (None: where they stand), and the other rungs, which know no means."""
+    rungs = predictor.rates(es_n0_db)
+    arrays = rungs["exact"] if means is None else predictor.displaced(es_n0_db, means)
+    exact = {kind: float(arrays[kind]) for kind in ("ser", "ber")}
+    others = {rung: {kind: float(rungs[rung][kind]) for kind in ("ser", "ber") if rungs[rung][kind] > 0} for rung in RUNGS if rung != "exact"}
+    return exact, others
+
+
+def counted_row(predictor, es_n0_db, counts, confidence=0.95, means=None):
+    """One row of `simulate`: a tally beside the exact rates and the other rungs."""
+    exact, others = _predicted(predictor, es_n0_db, means)
     row = {"es_n0_db": es_n0_db, "eb_n0_db": eb_n0_db(predictor.set, es_n0_db)}
     row.update({field: getattr(counts, field) for field in ("symbols", "symbol_errors", "bits", "bit_errors")})
     if counts.symbols:
@@ -116,18 +125,20 @@ def counted_row(predictor, es_n0_db, counts, confidence=0.95):
         if spread > 0:
             row["z"] = (counts.symbol_errors - counts.symbols * exact["ser"]) / spread
     row["exact"] = {kind: rate for kind, rate in exact.items() if rate > 0}
+    row.update(others)
     return row
 
 
-def rare_row(predictor, es_n0_db, estimate):
+def rare_row(predictor, es_n0_db, estimate, means=None):
     """One row of `simulate --rare`: an estimate by importance sampling, which counts no errors."""
-    exact = {"ser": predictor.ser(es_n0_db), "ber": predictor.ber(es_n0_db)}
+    exact, others = _predicted(predictor, es_n0_db, means)
     row = {"es_n0_db": es_n0_db, "eb_n0_db": eb_n0_db(predictor.set, es_n0_db), "symbols": estimate["symbols"]}
     for kind in ("ser", "ber"):
         half = 1.959964 * estimate[kind + "_se"]
-        row[kind] = estimate[kind]
+        row[kind], row[kind + "_se"] = estimate[kind], estimate[kind + "_se"]
         row[kind + "_low"], row[kind + "_high"] = max(0.0, estimate[kind] - half), estimate[kind] + half
     row["exact"] = {kind: rate for kind, rate in exact.items() if rate > 0}
+    row.update(others)
     if estimate["ser_se"] > 0:
         row["z"] = (estimate["ser"] - exact["ser"]) / estimate["ser_se"]
     return row

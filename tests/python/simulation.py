@@ -9,7 +9,7 @@ import time
 
 import pytest
 from command import BUILD, FIRN, document, halfplane, refused
-from scipy.stats import beta
+from scipy.stats import beta, norm
 
 
 def test_schema_and_interval():
@@ -58,8 +58,47 @@ def test_ctrl_c_keeps_what_was_counted():
     assert row["symbols"] > 0 and row["symbol_errors"] == 0
 
 
+def test_width_of_the_interval_stops_it():
+    (row,) = document("simulate", "qam:16", "--es-n0", "14", "--width", "0.05")["rows"]
+    relative = (row["ser_high"] - row["ser_low"]) / row["ser"]
+    # The width goes with the root of the count and a run is 65,536 symbols: not narrower than one run fewer would leave it.
+    assert 0.05 * (1 - 65536 / row["symbols"]) ** 0.5 * 0.98 < relative < 0.05
+
+
+def test_displaced_points_against_the_exact_rate_and_in_closed_form():
+    moved = ["--rotation", "-5", "--gain-imbalance", "0.8", "--phase-imbalance", "3", "--offset", "0.05-0.02j", "--saturation", "3"]
+    run = document("simulate", "qam:16", "--es-n0", "14", "--errors", "20000", *moved)
+    (row,) = run["rows"]
+    (plain,) = document("simulate", "qam:16", "--es-n0", "14", "--errors", "20000")["rows"]
+    assert abs(row["z"]) < 4.5 and len(run["means"]) == 16
+    assert row["exact"]["ser"] > 1.2 * plain["exact"]["ser"]
+    assert row["union"] == plain["union"]  # knows nothing of the displacement
+    # Two points at +-1 and an offset d along their line: SER = [Q((1 + d) sqrt(2/N0)) + Q((1 - d) sqrt(2/N0))] / 2.
+    (two,) = document("simulate", "psk:2", "--es-n0", "6", "--errors", "20000", "--offset", "0.3")["rows"]
+    scale = (2 * 10**0.6) ** 0.5
+    assert two["exact"]["ser"] == pytest.approx((norm.sf(1.3 * scale) + norm.sf(0.7 * scale)) / 2, rel=1e-12)
+    assert abs(two["z"]) < 4.5
+
+
+@pytest.mark.parametrize("es_n0_db", [15, 17, 19, 20, 21, 22, 23, 24, 24.8, 25.4])
+def test_rare_errors_of_qam_16_in_closed_form(es_n0_db):
+    """From 1e-3 to 1e-15 within 4.5 of its own standard errors, and these are what was asked for (5 %: 400 'errors')."""
+    (row,) = document("simulate", "qam:16", "--es-n0", str(es_n0_db), "--rare", "--errors", "400")["rows"]
+    q = norm.sf((10 ** (es_n0_db / 10) / 5) ** 0.5)  # half the spacing over sigma; SER = 3 q - 9/4 q^2
+    exact = 3 * q - 2.25 * q * q
+    assert abs(row["ser"] - exact) < 4.5 * row["ser_se"] and row["ser_se"] < 0.07 * exact
+
+
+def test_plot(tmp_path):
+    halfplane("simulate", "qam:16", "--es-n0", "10..14/2", "--rotation", "2", "--plot", tmp_path / "rates.svg")
+    assert "<svg" in (tmp_path / "rates.svg").read_text()
+    assert ".svg, .png" in refused("simulate", "qam:16", "--es-n0", "10", "--plot", tmp_path / "rates.xyz")
+
+
 def test_table_and_refusals():
     assert "importance sampling" in halfplane("simulate", "psk:8", "--es-n0", "20", "--rare").stdout
     assert "not a whole number" in refused("simulate", FIRN, "--es-n0", "3", "--errors", "0")
     assert "seed" in refused("simulate", FIRN, "--es-n0", "3", "--seed", "-1")
+    assert "saturation must be" in refused("simulate", FIRN, "--es-n0", "3", "--saturation", "-1")
+    assert "--width does not go with --rare" in refused("simulate", FIRN, "--es-n0", "3", "--rare", "--width", "0.1")
     assert "--es-n0 or --eb-n0" in refused("simulate", FIRN)

@@ -83,9 +83,11 @@ py::dict counted(const signal_set& set,
                  std::uint64_t seed,
                  const std::optional<complexes>& means,
                  unsigned threads,
-                 const py::object& progress)
+                 const py::object& progress,
+                 double relative_width)
 {
-    const auto options = options_of(es_n0_db, law, rule, errors, max_symbols, seed, means, threads);
+    auto options = options_of(es_n0_db, law, rule, errors, max_symbols, seed, means, threads);
+    options.relative_width = relative_width;
     caller call(progress);
     auto result = [&] {
         py::gil_scoped_release free;
@@ -145,9 +147,11 @@ void bind_simulate(py::module_& m)
           py::arg("means") = py::none(),
           py::arg("threads") = 0,
           py::arg("progress") = py::none(),
+          py::arg("relative_width") = 0.0,
           R"(Counts the errors of a seeded random link on all cores.
 
-Stops at `errors` symbol errors (0: never) or `max_symbols`. The same seed and options give the same counts on any
+Stops at `errors` symbol errors (0: never), at `max_symbols`, or when the 95 % interval of the SER is narrower than
+`relative_width` times the SER (0: never). The same seed and options give the same counts on any
 number of threads. means: where each point is received, M complex numbers; at the points where left out.
 progress(fraction, symbols, symbol_errors) is called ten times a second at most; False stops, and so does Ctrl-C: what
 was counted stands. Returns a dict: counts (a tally), seconds, cancelled, interrupted.)");
