@@ -188,7 +188,8 @@ report watch::reporting::report_of(window&& w, bool final)
     out["schema"] = "halfplane/report/1";
     out["version"] = HALFPLANE_VERSION;
     out["settings_sha256"] = d_digest;
-    out["time"] = d_options.clock ? d_options.clock() : utc_now();
+    if (auto time = d_options.clock ? d_options.clock() : utc_now(); !time.empty())
+        out["time"] = std::move(time);
     out["sequence"] = d_sequence++;
     if (final)
         out["final"] = true;

@@ -153,9 +153,12 @@ def _rate(value):
 
 
 def _decibels(fall):
-    """A shortfall with half the width of its interval."""
+    """A shortfall with half the width of its interval; an end alone where no errors give no more."""
     if not fall:
         return "–"
+    if "db" not in fall:
+        sign, end = ("≤", "db_high") if "db_high" in fall else ("≥", "db_low")
+        return f"{sign} {shown.db(fall.get(end))}"
     if "db_low" not in fall or "db_high" not in fall:
         return shown.db(fall["db"])
     return f"{shown.db(fall['db'])} ± {(fall['db_high'] - fall['db_low']) / 2:.2f}"

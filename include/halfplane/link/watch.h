@@ -44,7 +44,8 @@ struct watch_options {
     std::uint64_t window = 10000;    ///< symbols handed in, judged or not, after which a window closes; ≥ 1
     bool explain = true;             ///< gather what losses and premises are made of
     trial_options trial;             ///< frames, and the target of the verdict
-    std::function<std::string()> clock; ///< UTC, RFC 3339; the system's clock where empty
+    /// UTC, RFC 3339; the system's clock where empty. What gives no text leaves `time` out.
+    std::function<std::string()> clock;
 };
 
 /*!

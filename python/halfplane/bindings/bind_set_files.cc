@@ -47,6 +47,15 @@ void bind_set_files(py::module_& m)
           "Writes a set file: CSV where the path ends in .csv, else JSON. Reads back to the very same "
           "doubles.");
     m.def("set_json", &set_json, py::arg("set"), "The text of a JSON set file.");
+    m.def(
+        "parse_set_json",
+        [](const std::string& text, const std::string& source) {
+            std::istringstream in(text);
+            return read_set_json(in, source);
+        },
+        py::arg("text"),
+        py::arg("source"),
+        "A constellation from the text of a JSON set file; source is what refusals call it.");
     m.def("load_set",
           &load_set,
           py::arg("what"),

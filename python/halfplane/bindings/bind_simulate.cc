@@ -1,5 +1,6 @@
 // SPDX-License-Identifier: GPL-3.0-or-later
 // Bindings of the simulator: seeded links counted on all cores, and rare errors by importance sampling.
+#include "outside_word.h"
 #include "topics.h"
 
 #include "halfplane/simulate.h"
@@ -13,42 +14,19 @@ namespace halfplane::python {
 namespace {
 
 /// What stops a simulation from outside: Ctrl-C, or a callback that returns False or raises.
-class caller
+class caller : public outside_word
 {
 public:
     explicit caller(py::object progress) : d_progress(std::move(progress)) {}
 
     bool operator()(const simulation_progress& p)
     {
-        return goes_on([&] { return d_progress(p.fraction, p.counts.symbols, p.counts.symbol_errors); });
+        return goes_on(d_progress, p.fraction, p.counts.symbols, p.counts.symbol_errors);
     }
 
-    bool operator()(double, double fraction)
-    {
-        return goes_on([&] { return d_progress(fraction); });
-    }
-
-    bool interrupted = false;
+    bool operator()(double, double fraction) { return goes_on(d_progress, fraction); }
 
 private:
-    template <typename Ask>
-    bool goes_on(Ask ask)
-    {
-        py::gil_scoped_acquire python;
-        // Signals reach Python code only between its own instructions, of which there are none meanwhile.
-        if (PyErr_CheckSignals() != 0) {
-            interrupted = PyErr_ExceptionMatches(PyExc_KeyboardInterrupt) != 0;
-            if (!interrupted)
-                throw py::error_already_set();
-            PyErr_Clear();
-            return false;
-        }
-        if (d_progress.is_none())
-            return true;
-        const py::object answer = ask();
-        return answer.is_none() || answer.cast<bool>();
-    }
-
     py::object d_progress;
 };
 

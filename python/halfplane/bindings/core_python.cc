@@ -14,4 +14,5 @@ PYBIND11_MODULE(core_python, m)
     halfplane::python::bind_measures(m);
     halfplane::python::bind_simulate(m);
     halfplane::python::bind_planning(m);
+    halfplane::python::bind_recordings(m);
 }

@@ -26,6 +26,7 @@ void bind_geometry(py::module_& m);
 void bind_measures(py::module_& m);
 void bind_simulate(py::module_& m);
 void bind_planning(py::module_& m);
+void bind_recordings(py::module_& m);
 
 /// A copy of a vector as a one-dimensional array.
 template <typename T>

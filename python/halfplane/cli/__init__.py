@@ -3,11 +3,13 @@
 
 import importlib
 import sys
+import traceback
 
 import click
 
 # Exit codes, the same for every command.
 DONE, FAILED, BAD_USAGE, UNDECIDED = 0, 1, 2, 3
+BROKEN = 70  # an error of ours: never to be taken for a link that failed
 
 _COMMANDS = {
     "inspect": "facts about a constellation: distances, neighbours, symmetries, labels",
@@ -15,6 +17,8 @@ _COMMANDS = {
     "require": "the Es/N0 that a target error rate needs",
     "plan": "how many symbols a test of an error rate takes",
     "simulate": "count errors in seeded noise, beside the exact rate",
+    "judge": "a recording, one sample a symbol: counted, explained, passed or failed",
+    "describe": "SigMF metadata beside a file of samples",
     "report": "an acceptance report from logs: HTML, PDF or JSON",
     "watch": "a running link in a terminal, from its log or its page",
     "sets": "the constellations that have names",
@@ -86,6 +90,9 @@ def _run(command, name, arguments):
     except (KeyboardInterrupt, click.Abort):
         print(f"{name}: interrupted", file=sys.stderr)
         return 130
+    except Exception:
+        traceback.print_exc()
+        return BROKEN
 
 
 def _refuse(message, where):
