@@ -155,6 +155,62 @@ inline void max_ratios(const llr_part& v, float* __restrict value, float (*ratio
     }
 }
 
+constexpr std::size_t few_points = 16;
+
+/// For parts of few points: all metrics are kept, and measured from the largest. No sample is looked up.
+inline void few_differences(const llr_part& v,
+                            const double* __restrict x,
+                            const double* __restrict y,
+                            float* __restrict value)
+{
+    alignas(64) double metric[few_points][lanes];
+    alignas(64) double top[lanes];
+    for (std::size_t l = 0; l < lanes; ++l)
+        top[l] = metric[0][l] = x[l] * v.re[0] + y[l] * v.im[0] + v.constant[0];
+    for (std::size_t i = 1; i < v.size; ++i) {
+        const double re = v.re[i], im = v.im[i], constant = v.constant[i];
+        for (std::size_t l = 0; l < lanes; ++l) {
+            const double m = x[l] * re + y[l] * im + constant;
+            metric[i][l] = m;
+            top[l] = m > top[l] ? m : top[l];
+        }
+    }
+    for (std::size_t i = 0; i < v.size; ++i)
+        for (std::size_t l = 0; l < lanes; ++l)
+            value[v.label[i] * lanes + l] = larger(static_cast<float>(metric[i][l] - top[l]), deepest);
+}
+
+/// Bit by bit to sample by sample, `bits` of them.
+template <unsigned bits>
+inline void interleave(const float (*ratio)[lanes], float* __restrict out)
+{
+    for (std::size_t l = 0; l < lanes; ++l)
+        for (unsigned k = 0; k < bits; ++k)
+            out[l * bits + k] = ratio[k][l];
+}
+
+inline void write(const float (*ratio)[lanes], unsigned bits, std::size_t n, float* out)
+{
+    if (n == lanes)
+        switch (bits) {
+        case 2:
+            return interleave<2>(ratio, out);
+        case 3:
+            return interleave<3>(ratio, out);
+        case 4:
+            return interleave<4>(ratio, out);
+        case 6:
+            return interleave<6>(ratio, out);
+        case 8:
+            return interleave<8>(ratio, out);
+        default:
+            break;
+        }
+    for (std::size_t l = 0; l < n; ++l)
+        for (unsigned k = 0; k < bits; ++k)
+            out[l * bits + k] = ratio[k][l];
+}
+
 /// The ratios of a part's bits, each at its position.
 inline void part_ratios(const llr_view& whole,
                         const llr_part& v,
@@ -166,20 +222,21 @@ inline void part_ratios(const llr_view& whole,
                         float (*ratio)[lanes])
 {
     float own[16][lanes];
-    double reference[lanes];
-    reference_of(v, x, y, near, reference);
-    for (std::size_t i = 0; i < v.size; ++i) {
-        const double re = v.re[i], im = v.im[i], constant = v.constant[i];
-        float difference[lanes];
-        for (std::size_t l = 0; l < lanes; ++l)
-            difference[l] = static_cast<float>(x[l] * re + y[l] * im + constant - reference[l]);
-        float* const row = value + v.label[i] * lanes;
-        std::int32_t* const row_exponent = exponent + v.label[i] * lanes;
-        for (std::size_t l = 0; l < lanes; ++l)
-            row[l] = larger(difference[l], deepest);
-        if (whole.exact)
-            exp_of(row, row_exponent);
+    if (v.size <= few_points) {
+        few_differences(v, x, y, value);
+    } else {
+        double reference[lanes];
+        reference_of(v, x, y, near, reference);
+        for (std::size_t i = 0; i < v.size; ++i) {
+            const double re = v.re[i], im = v.im[i], constant = v.constant[i];
+            float* __restrict const row = value + v.label[i] * lanes;
+            for (std::size_t l = 0; l < lanes; ++l)
+                row[l] = larger(static_cast<float>(x[l] * re + y[l] * im + constant - reference[l]), deepest);
+        }
     }
+    if (whole.exact)
+        for (std::size_t i = 0; i < v.size; ++i)
+            exp_of(value + v.label[i] * lanes, exponent + v.label[i] * lanes);
     for (std::size_t m = 0; m < v.missing_count; ++m)
         for (std::size_t l = 0; l < lanes; ++l) {
             value[v.missing[m] * lanes + l] = whole.exact ? 0.0f : absent;
@@ -208,34 +265,51 @@ void llr(const llr_view& v,
          float* scratch)
 {
     using namespace llr_detail;
-    const std::size_t labels = std::size_t{1} << v.label_bits;
+    using noise_detail::as_bits;
+    using noise_detail::as_float;
+    const unsigned bits = v.label_bits;
+    const float limit = v.saturation;
+    const std::uint32_t sign = as_bits(v.sign);
+    const std::size_t labels = std::size_t{1} << bits;
     float* const value = scratch;
     std::int32_t* const exponent = reinterpret_cast<std::int32_t*>(scratch + labels * lanes);
     float ratio[16][lanes];
     while (count > 0) {
         const std::size_t n = count < lanes ? count : lanes;
-        double x[lanes] = {}, y[lanes] = {};
-        float speaks[lanes] = {};
-        std::uint16_t near[lanes] = {};
-        for (std::size_t l = 0; l < n; ++l) {
-            const bool finite = decided[l] != 0xffff;
-            x[l] = finite ? static_cast<double>(in[2 * l]) : 0;
-            y[l] = finite ? static_cast<double>(in[2 * l + 1]) : 0;
-            near[l] = finite ? decided[l] : static_cast<std::uint16_t>(0);
-            speaks[l] = finite ? v.sign : 0.0f;
+        alignas(64) float sample[2 * lanes];
+        std::uint16_t near[lanes];
+        if (n == lanes) {
+            __builtin_memcpy(sample, in, sizeof sample);
+            __builtin_memcpy(near, decided, sizeof near);
+        } else { // the rest is filled up with samples that are none
+            for (std::size_t l = 0; l < lanes; ++l) {
+                sample[2 * l] = l < n ? in[2 * l] : 0;
+                sample[2 * l + 1] = l < n ? in[2 * l + 1] : 0;
+                near[l] = l < n ? decided[l] : static_cast<std::uint16_t>(0xffff);
+            }
         }
+        alignas(64) std::uint32_t finite[lanes]; // all ones, or zero
+        alignas(64) double x[lanes], y[lanes];
+        alignas(64) float speaks[lanes];
+        for (std::size_t l = 0; l < lanes; ++l)
+            finite[l] = near[l] != 0xffff ? ~std::uint32_t{0} : 0u;
+        for (std::size_t l = 0; l < lanes; ++l) {
+            x[l] = static_cast<double>(as_float(as_bits(sample[2 * l]) & finite[l]));
+            y[l] = static_cast<double>(as_float(as_bits(sample[2 * l + 1]) & finite[l]));
+        }
+        for (std::size_t l = 0; l < lanes; ++l)
+            speaks[l] = as_float(sign & finite[l]);
+        for (std::size_t l = 0; l < lanes; ++l)
+            near[l] = static_cast<std::uint16_t>(near[l] & finite[l]);
         for (unsigned p = 0; p < v.parts; ++p)
             part_ratios(v, v.part[p], x, y, near, value, exponent, ratio);
-        for (unsigned bit = 0; bit < v.label_bits; ++bit)
+        for (unsigned bit = 0; bit < bits; ++bit)
             for (std::size_t l = 0; l < lanes; ++l) {
-                const float r = ratio[bit][l];
-                ratio[bit][l] =
-                    speaks[l] * (r > v.saturation ? v.saturation : (r < -v.saturation ? -v.saturation : r));
+                const float low = ratio[bit][l] > -limit ? ratio[bit][l] : -limit;
+                ratio[bit][l] = speaks[l] * (low < limit ? low : limit);
             }
-        for (std::size_t l = 0; l < n; ++l)
-            for (unsigned k = 0; k < v.label_bits; ++k)
-                out[l * v.label_bits + k] = ratio[k][l];
-        in += 2 * n, decided += n, out += n * v.label_bits, count -= n;
+        write(ratio, bits, n, out);
+        in += 2 * n, decided += n, out += n * bits, count -= n;
     }
 }
 
