@@ -9,7 +9,7 @@ packages_to_build=(gnuradio-dev cmake make g++ ccache nlohmann-json3-dev libboos
     python3-numpy python3-click python3-rich python3-matplotlib)
 packages_to_test=("${packages_to_build[@]}" libgtest-dev libbenchmark-dev clang-format
     mypy python3-pytest python3-pypdf weasyprint python3-scipy python3-mpmath
-    python3-aiohttp python3-prometheus-client python3-pyqt5 python3-pyqtgraph chromium chromium-driver python3-selenium python3-yaml)
+    python3-aiohttp python3-prometheus-client python3-pyqt5 python3-pyqtgraph chromium chromium-driver python3-selenium python3-sphinx python3-yaml)
 
 say() { printf '== %s\n' "$*"; }
 fail() { printf '%s: %s\n' "$(basename "$0")" "$*" >&2; exit 2; }
