@@ -106,6 +106,12 @@ struct workload {
     std::vector<float> soft;
 };
 
+/// One line of the summary: a figure, what is wanted of it, and whether it is met.
+void summarise(const std::string& figure, double value, double wanted)
+{
+    std::printf("%-44s %9.2f %9.2f  %s\n", figure.c_str(), value, wanted, value >= wanted ? "met" : "missed");
+}
+
 double of(const std::map<std::string, double>& rates, const std::string& name)
 {
     const auto found = rates.find(name);
@@ -236,13 +242,38 @@ int main(int argc, char** argv)
         two / one,
         std::thread::hardware_concurrency());
     std::fflush(stdout);
+    double over_numpy = 0;
 #ifdef HALFPLANE_NUMPY_SIMULATION
     if (std::FILE* numpy = popen(HALFPLANE_NUMPY_SIMULATION, "r")) {
         double rate = 0;
-        if (std::fscanf(numpy, "%lf", &rate) == 1 && rate > 0)
+        if (std::fscanf(numpy, "%lf", &rate) == 1 && rate > 0) {
+            over_numpy = one / rate;
             std::printf(
-                "numpy: %.2f Msymbol/s, the simulator on one thread %.0f x as fast\n", rate, one / rate);
+                "numpy: %.2f Msymbol/s, the simulator on one thread %.0f x as fast\n", rate, over_numpy);
+        }
         pclose(numpy);
     }
 #endif
+
+    std::printf("\n%-44s %9s %9s\n", "figure", "measured", "wanted");
+    summarise("slowest hard decision, Msymbol/s", slowest, 200);
+    summarise("slowest / fastest hard decision", slowest / fastest, 0.4);
+    const std::pair<const char*, double> hard_ratios[] = {
+        {"grid-4x4", 20}, {"grid-8x8", 100}, {"grid-32x32", 800}};
+    for (const auto& [name, wanted] : hard_ratios)
+        if (const double host = of(r, std::string("host hard ") + name); host > 0)
+            summarise(
+                std::string("hard / host, ") + name, of(r, std::string("detect ") + name) / host, wanted);
+    for (const std::string& name : soft)
+        if (const double host = of(r, "host soft " + name); host > 0)
+            summarise("exact ratios / host, " + name, of(r, "exact " + name) / host, 30);
+    for (const std::string& name : soft)
+        summarise("max-log / exact, " + name, of(r, "max-log " + name) / of(r, "exact " + name), 2);
+    summarise("complex normals, M/s", of(r, "complex normals"), 100);
+    summarise("simulator on one thread, Msymbol/s", one, 45);
+    summarise("simulator, two threads / one", two / one, 1.85);
+    if (over_numpy > 0)
+        summarise("simulator on one thread / numpy", over_numpy, 15);
+    std::printf(
+        "Kernels by the processor's time, simulator and numpy by the wall: busy cores shrink the latter.\n");
 }
