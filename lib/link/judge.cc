@@ -171,7 +171,7 @@ private:
 
 std::uint64_t window_for(std::uint64_t samples) noexcept
 {
-    return std::max<std::uint64_t>(10000, samples / 200 + 1);
+    return std::max<std::uint64_t>(10000, (samples + 49) / 50);
 }
 
 judgement judge(recording& from, const signal_set& set, const pattern& known, judge_options options)

@@ -40,7 +40,8 @@ struct judgement {
  */
 judgement judge(recording& from, const signal_set& set, const pattern& known, judge_options options);
 
-/// A window for a recording of so many samples: two hundred reports at most, 10,000 symbols at least.
+/// A window for a recording of so many samples: fifty reports at most, since each costs a prediction; 10,000
+/// symbols at least.
 std::uint64_t window_for(std::uint64_t samples) noexcept;
 
 } // namespace halfplane::link

@@ -172,7 +172,7 @@ sample_rate: Hz, where the recording does not say it.)")
           py::arg("progress") = py::none(),
           R"(Judges a recording with one sample a symbol by the objects of the live link.
 
-target: "ser:1e-3", "ber:1e-5", "fer:1e-2" or empty; window: symbols a report, 0 for two hundred reports at most; log:
+target: "ser:1e-3", "ber:1e-5", "fer:1e-2" or empty; window: symbols a report, 0 for fifty reports at most; log:
 file that each report is appended to. progress(samples) is called ten times a second at most; False stops, and so does
 Ctrl-C: what was read is judged. Returns a dict: report and settings (JSON), complete, interrupted, and log_failed,
 log_error where lines could not be written.)");

@@ -29,7 +29,7 @@ _CODES = {"pass": DONE, "fail": FAILED, "undecided": UNDECIDED}
 @click.option("--input-es-n0", type=float, metavar="DB", help="Es/N0 ahead of the receiver, for the shortfall at the input.")
 @arguments.detector_option
 @click.option("--format", "datatype", default="", metavar="FORMAT", help=f"Of a file without metadata: {', '.join(core.sample_formats())}.")
-@click.option("--window", type=arguments.Count(), help="Symbols a report; by default two hundred reports at most.")
+@click.option("--window", type=arguments.Count(), help="Symbols a report; by default fifty reports at most, of 10,000 at least.")
 @click.option("--log", type=click.Path(dir_okay=False), metavar="FILE", help="Append every report, as link_log does.")
 @click.option("--unverified", is_flag=True, help="Do not read the recording twice to verify the SHA-512 it states.")
 @arguments.json_option
