@@ -35,11 +35,11 @@ struct few_candidates {
 
 /*!
  * A fine grid kept in pages where samples fall (near_map.h). Square (ix, iy), in float as in detect_view, is
- * in page (ix/8, iy/8); `pages` holds the place of the page's first entry, doubled, plus 1, or without the 1
- * that of the one entry which its 64 squares share.
+ * in page (ix/16, iy/16); `pages` holds the place of the page's first entry, doubled, plus 1, or without the
+ * 1 that of the one entry which its 256 squares share.
  */
 struct near_view {
-    static constexpr unsigned page_bits = 3;
+    static constexpr unsigned page_bits = 4;
     // An entry below `open` is the decision itself; open + k leads to lists[k]; `elsewhere` to the main grid.
     static constexpr std::uint16_t open = 0x8000;
     static constexpr std::uint16_t elsewhere = 0xffff;

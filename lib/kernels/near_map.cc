@@ -10,8 +10,8 @@ namespace halfplane::kernels {
 namespace {
 constexpr unsigned page_side = 1u << near_view::page_bits;
 constexpr double squares_a_spacing = 6; // a sample at SER 1e-2 then meets one candidate in nine cases of ten
-constexpr unsigned most_pages_a_side = 1024;
-constexpr std::uint64_t most_pages = 1u << 15;
+constexpr unsigned most_pages_a_side = 512;
+constexpr std::uint64_t most_pages = 1u << 13;
 constexpr double finer = 1.25; // than the coarse grid, or it is not worth the second look
 
 /// For each point the distance to the nearest other; points sorted by abscissa, so few are compared.

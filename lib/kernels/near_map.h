@@ -14,8 +14,8 @@ namespace halfplane::kernels {
 /*!
  * A grid over the whole plane that resolves a ring of 4,096 points has more squares than a cache has room
  * for, and nearly all of them are never visited: samples fall near points. So squares are kept in pages of
- * 8 × 8, and only the pages near a point exist; a sample elsewhere is left to the candidate map. A page that
- * is won by one point throughout is a single entry.
+ * 16 × 16, and only the pages near a point exist; a sample elsewhere is left to the candidate map. A page
+ * that is won by one point throughout is a single entry.
  */
 class near_map
 {
