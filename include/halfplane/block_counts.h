@@ -41,6 +41,16 @@ public:
      */
     std::optional<double> dispersion() const;
 
+    /// See carry.h.
+    template <typename Archive>
+    void carry(Archive& a)
+    {
+        a("levels", d_levels);
+        a("open_symbols", d_open_symbols);
+        a("open_errors", d_open_errors);
+        a("errors", d_errors);
+    }
+
 private:
     static constexpr std::size_t lengths = 48;
     struct level {
@@ -48,6 +58,15 @@ private:
         long double squares = 0;
         std::uint64_t half = 0; ///< errors of a first half that waits for its second
         bool waiting = false;
+        template <typename Archive>
+        void carry(Archive& a)
+        {
+            a("blocks", blocks);
+            a("errors", errors);
+            a("squares", squares);
+            a("half", half);
+            a("waiting", waiting);
+        }
     };
     void add(std::uint64_t steps, std::uint64_t errors);
     void close_block(std::uint64_t errors, std::size_t length = 0);

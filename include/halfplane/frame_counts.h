@@ -79,6 +79,18 @@ public:
         d_begun = d_wrong = false;
         d_cause = none;
     }
+    /// See carry.h.
+    template <typename Archive>
+    void carry(Archive& a)
+    {
+        a("frames", frames);
+        a("frame_errors", frame_errors);
+        a("excluded", excluded);
+        a("position", d_position);
+        a("begun", d_begun);
+        a("wrong", d_wrong);
+        a("cause", d_cause);
+    }
 
 private:
     static constexpr std::size_t none = causes;

@@ -56,6 +56,13 @@ public:
     /// Nothing where fewer than 3 symbols came, one point only was sent, there is no gain, or the noise is
     /// below 1e-13 of the received energy, where sums over single-precision samples cannot tell it.
     std::optional<gauge_result> solve(const signal_set& set) const;
+    /// See carry.h.
+    template <typename Archive>
+    void carry(Archive& a)
+    {
+        a("all", d_all);
+        a("errors", d_errors);
+    }
 
 private:
     struct sums {
@@ -65,6 +72,19 @@ private:
         long double rs_re = 0, rs_im = 0; // Σ r·s*
         long double rr = 0, ss = 0;       // Σ|r|², Σ|s|²
         void merge(const sums& later);
+        template <typename Archive>
+        void carry(Archive& a)
+        {
+            a("n", n);
+            a("r_re", r_re);
+            a("r_im", r_im);
+            a("s_re", s_re);
+            a("s_im", s_im);
+            a("rs_re", rs_re);
+            a("rs_im", rs_im);
+            a("rr", rr);
+            a("ss", ss);
+        }
     };
     sums d_all, d_errors;
 };

@@ -53,6 +53,25 @@ struct residual_moments {
     double radial_gain = 0, tangential_gain = 0;
 
     void merge(const residual_moments& later);
+    /// See carry.h.
+    template <typename Archive>
+    void carry(Archive& a)
+    {
+        a("symbols", symbols);
+        a("power", power);
+        a("fourth", fourth);
+        a("square", square);
+        a("turned", turned);
+        a("turned_norm", turned_norm);
+        a("signal_fourth", signal_fourth);
+        a("pairs", pairs);
+        a("lag_one", lag_one);
+        a("blocks", blocks);
+        a("block_powers", block_powers);
+        a("stretches", stretches);
+        a("radial_gain", radial_gain);
+        a("tangential_gain", tangential_gain);
+    }
 };
 
 /// Sufficient sums of the explained symbols of a stretch of stream; merging adds.
@@ -67,6 +86,14 @@ public:
     complex product(std::size_t i, std::size_t j) const { return d_gram[place(i, j)]; }
 
     residual_moments moments;
+    /// See carry.h.
+    template <typename Archive>
+    void carry(Archive& a)
+    {
+        a("moments", moments);
+        a("symbols", d_symbols);
+        a("gram", d_gram);
+    }
 
 private:
     friend class residual_gatherer;

@@ -38,6 +38,20 @@ public:
     /// Every second that was added.
     std::uint64_t all() const noexcept { return d_available + d_unavailable + d_unmeasured; }
 
+    /// See carry.h.
+    template <typename Archive>
+    void carry(Archive& a)
+    {
+        a("errored", d_errored);
+        a("severe", d_severe);
+        a("available", d_available);
+        a("unavailable", d_unavailable);
+        a("unmeasured", d_unmeasured);
+        a("is_available", d_is_available);
+        a("turning", d_turning);
+        a("turning_errored", d_turning_errored);
+    }
+
 private:
     std::uint64_t d_errored = 0, d_severe = 0, d_available = 0, d_unavailable = 0, d_unmeasured = 0;
     bool d_is_available = true;

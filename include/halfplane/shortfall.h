@@ -42,6 +42,14 @@ public:
     expectation at(const ser_curve& curve, double shift_db) const;
     double lowest_db() const;
     double highest_db() const;
+    /// See carry.h.
+    template <typename Archive>
+    void carry(Archive& a)
+    {
+        a("bins", d_bins);
+        a("width_exponent", d_width_exponent);
+        a("symbols", d_symbols);
+    }
 
 private:
     struct bin {
@@ -51,6 +59,16 @@ private:
         double n2_variance = 0;       // Σ n²·variance
         double error_influence = 0;
         void merge(const bin& other);
+        template <typename Archive>
+        void carry(Archive& a)
+        {
+            a("symbols", symbols);
+            a("mean", mean);
+            a("squares", squares);
+            a("n_variance", n_variance);
+            a("n2_variance", n2_variance);
+            a("error_influence", error_influence);
+        }
     };
     std::map<long long, bin> d_bins;
     int d_width_exponent = -20; // bins are 2^this dB wide

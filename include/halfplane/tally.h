@@ -39,6 +39,22 @@ public:
     std::vector<std::uint64_t> by_bit;                     ///< bit errors by position, [0] the leftmost
     transition_counts transitions;                         ///< errors only
 
+    /// See carry.h.
+    template <typename Archive>
+    void carry(Archive& a)
+    {
+        a("symbols", symbols);
+        a("symbol_errors", symbol_errors);
+        a("bits", bits);
+        a("bit_errors", bit_errors);
+        a("bit_errors_squared", bit_errors_squared);
+        a("nonfinite", nonfinite);
+        a("excluded", excluded);
+        a("sent", sent);
+        a("by_bit", by_bit);
+        a("transitions", transitions);
+    }
+
     /// symbols + nonfinite + Σ excluded: every symbol that was ever handed in.
     std::uint64_t accounted() const;
     /// Σh²/Σh, how bit errors clump within symbols; 1 with no errors.

@@ -2,6 +2,8 @@
 // transition_counts: how often each symbol was taken for which other one.
 #pragma once
 
+#include "halfplane/carry.h"
+
 #include <cstddef>
 #include <cstdint>
 #include <vector>
@@ -33,6 +35,9 @@ public:
     std::uint64_t count(std::uint16_t from, std::uint16_t to) const;
     /// Every counted pair, ascending by (from, to).
     std::vector<transition> sorted() const;
+    /// Counted pairs alone, in rows of [from, to, count]. See carry.h.
+    void carry(carry_writer& a) const;
+    void carry(carry_reader& a);
 
 private:
     struct slot {

@@ -56,10 +56,25 @@ void link_log_impl::post(pmt::pmt_t which_port, pmt::pmt_t message)
         gr::block::post(which_port, message);
 }
 
+void link_log_impl::keep_carry(const pmt::pmt_t& message)
+{
+    static const pmt::pmt_t key = pmt::mp("carry");
+    const auto carry = pmt::is_dict(message) ? pmt::dict_ref(message, key, pmt::PMT_NIL) : pmt::PMT_NIL;
+    if (!pmt::is_u8vector(carry))
+        return;
+    std::size_t length = 0;
+    const auto* bytes = pmt::u8vector_elements(carry, length);
+    const bool kept = d_log.keep(std::string(reinterpret_cast<const char*>(bytes), length));
+    if (!kept && !d_keep_failing)
+        d_logger->error("the state to resume from is that of an earlier report: {:s}", d_log.last_error());
+    d_keep_failing = !kept;
+}
+
 void link_log_impl::write(const pmt::pmt_t& message)
 {
     const std::lock_guard<std::mutex> lock(d_mutex);
     try {
+        keep_carry(message);
         auto line = pmt_to_json(without_known_settings(message, d_log.settings_digest()));
         const bool was_failing = d_log.failing();
         if (!d_log.write(std::move(line)) && !was_failing)

@@ -21,10 +21,12 @@ public:
     void post(pmt::pmt_t which_port, pmt::pmt_t message) override;
 
 private:
+    void keep_carry(const pmt::pmt_t& message);
     void write(const pmt::pmt_t& message);
 
     mutable std::mutex d_mutex; ///< several publishers may come at once
     ::halfplane::link::report_log d_log;
+    bool d_keep_failing = false;
 };
 
 } // namespace gr::halfplane

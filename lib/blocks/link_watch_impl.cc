@@ -38,7 +38,8 @@ bool from_receiver(const std::string& decisions)
                                             const std::string& decisions,
                                             const std::string& target,
                                             std::uint64_t frame_symbols,
-                                            double max_excluded)
+                                            double max_excluded,
+                                            const std::string& resume)
 {
     ::halfplane::link::watch_options options;
     options.pattern = pattern;
@@ -55,6 +56,7 @@ bool from_receiver(const std::string& decisions)
                                   "a finite number ≥ 0 is wanted");
     options.receiver_decisions = from_receiver(decisions);
     options.trial = {target, frame_symbols, max_excluded};
+    options.resume = resume;
     return options;
 }
 
@@ -68,10 +70,19 @@ link_watch::sptr link_watch::make(const ::halfplane::signal_set& set,
                                   const std::string& decisions,
                                   const std::string& target,
                                   std::uint64_t frame_symbols,
-                                  double max_excluded)
+                                  double max_excluded,
+                                  const std::string& resume)
 {
-    return gnuradio::make_block_sptr<link_watch_impl>(
-        set, pattern, window, confidence, symbol_rate, decisions, target, frame_symbols, max_excluded);
+    return gnuradio::make_block_sptr<link_watch_impl>(set,
+                                                      pattern,
+                                                      window,
+                                                      confidence,
+                                                      symbol_rate,
+                                                      decisions,
+                                                      target,
+                                                      frame_symbols,
+                                                      max_excluded,
+                                                      resume);
 }
 
 link_watch_impl::link_watch_impl(const ::halfplane::signal_set& set,
@@ -82,18 +93,25 @@ link_watch_impl::link_watch_impl(const ::halfplane::signal_set& set,
                                  const std::string& decisions,
                                  const std::string& target,
                                  std::uint64_t frame_symbols,
-                                 double max_excluded)
+                                 double max_excluded,
+                                 const std::string& resume)
     : gr::sync_block(
           "link_watch",
           from_receiver(decisions)
               ? gr::io_signature::make3(3, 3, sizeof(gr_complex), sizeof(reference_t), sizeof(std::int16_t))
               : gr::io_signature::make2(2, 2, sizeof(gr_complex), sizeof(reference_t)),
           gr::io_signature::make(0, 0, 0)),
-      d_reporter(
-          set,
-          options_of(
-              pattern, window, confidence, symbol_rate, decisions, target, frame_symbols, max_excluded),
-          {0.1, [this](const ::halfplane::link::report& made) { publish(made); }})
+      d_reporter(set,
+                 options_of(pattern,
+                            window,
+                            confidence,
+                            symbol_rate,
+                            decisions,
+                            target,
+                            frame_symbols,
+                            max_excluded,
+                            resume),
+                 {0.1, [this](const ::halfplane::link::report& made) { publish(made); }})
 {
     d_settings = json_to_pmt(d_reporter.settings());
     message_port_register_out(report_port());
@@ -132,8 +150,19 @@ bool link_watch_impl::stop()
 
 void link_watch_impl::publish(const ::halfplane::link::report& made)
 {
-    static const pmt::pmt_t settings = pmt::mp("settings");
-    message_port_pub(report_port(), pmt::dict_add(json_to_pmt(made), settings, d_settings));
+    static const pmt::pmt_t settings = pmt::mp("settings"), carry = pmt::mp("carry");
+    auto message = pmt::dict_add(json_to_pmt(made), settings, d_settings);
+    // Of large sets the state is long: it may take a tenth of the time, and goes out with the last report in
+    // any case.
+    const auto began = std::chrono::steady_clock::now();
+    if (began >= d_carry_due || made.contains("final")) {
+        const auto text = d_reporter.carry();
+        const auto* bytes = reinterpret_cast<const std::uint8_t*>(text.data());
+        message = pmt::dict_add(message, carry, pmt::init_u8vector(text.size(), bytes));
+        const auto now = std::chrono::steady_clock::now();
+        d_carry_due = now + 9 * (now - began);
+    }
+    message_port_pub(report_port(), message);
 }
 
 void link_watch_impl::take_input(const pmt::pmt_t& message)

@@ -8,6 +8,8 @@
 #include <gnuradio/gr_complex.h>
 #include <gnuradio/halfplane/link_watch.h>
 
+#include <chrono>
+
 namespace gr::halfplane {
 
 class link_watch_impl final : public link_watch
@@ -21,7 +23,8 @@ public:
                     const std::string& decisions,
                     const std::string& target,
                     std::uint64_t frame_symbols,
-                    double max_excluded);
+                    double max_excluded,
+                    const std::string& resume);
     ~link_watch_impl() override;
 
     std::string report() const override;
@@ -34,6 +37,7 @@ private:
     void take_input(const pmt::pmt_t& message);
     void take_tag(const gr::tag_t& tag);
 
+    std::chrono::steady_clock::time_point d_carry_due{};
     pmt::pmt_t d_settings;                  ///< made once, a part of every message
     ::halfplane::link::reporter d_reporter; ///< locks for itself
 };

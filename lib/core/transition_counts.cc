@@ -90,4 +90,27 @@ std::vector<transition> transition_counts::sorted() const
     return all;
 }
 
+void transition_counts::carry(carry_writer& a) const
+{
+    std::vector<std::array<std::uint64_t, 3>> rows;
+    for (const auto& t : sorted())
+        rows.push_back({t.from, t.to, t.count});
+    a("rows", rows);
+}
+
+void transition_counts::carry(carry_reader& a)
+{
+    nlohmann::json rows;
+    a("rows", rows);
+    transition_counts fresh(d_size);
+    for (const auto& row : rows) {
+        const auto from = row.at(0).get<std::uint64_t>(), to = row.at(1).get<std::uint64_t>(),
+                   count = row.at(2).get<std::uint64_t>();
+        if (from >= d_size || to >= d_size || count == 0)
+            throw std::invalid_argument("a transition reads " + row.dump());
+        fresh.add(static_cast<std::uint16_t>(from), static_cast<std::uint16_t>(to), count);
+    }
+    *this = std::move(fresh);
+}
+
 } // namespace halfplane

@@ -21,6 +21,16 @@ struct expected_errors {
     std::uint64_t symbols = 0;                      ///< n: judged symbols spoken of
     std::vector<double> transitions;                ///< Σ n_i·P(j|i), row by row; empty for large sets
 
+    /// See carry.h.
+    template <typename Archive>
+    void carry(Archive& a)
+    {
+        a("symbol", symbol);
+        a("bit", bit);
+        a("symbols", symbols);
+        a("transitions", transitions);
+    }
+
     void add(const predictor& p, const rates& at_es_n0, double es_n0, const tally& counts);
 };
 

@@ -16,6 +16,12 @@ class explanation
 {
 public:
     void add(const residual_sums& of_window) { d_sums.merge(of_window); }
+    /// See carry.h.
+    template <typename Archive>
+    void carry(Archive& a)
+    {
+        a("sums", d_sums);
+    }
     /// Makes losses and premises where they are due; `last`: in any case.
     void refresh(const predictor& p, const ser_curve& curve, const loss_question& asked, bool last);
 

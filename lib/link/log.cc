@@ -55,9 +55,14 @@ void report_log::close()
     d_file = -1;
 }
 
+void report_log::note(const std::string& path, const char* doing, int error)
+{
+    d_error = path + ": " + doing + ": " + std::generic_category().message(error);
+}
+
 bool report_log::fail(const char* doing, int error)
 {
-    d_error = d_path + ": " + doing + ": " + std::generic_category().message(error);
+    note(d_path, doing, error);
     d_failing = true;
     ++d_failed;
     close();
@@ -90,7 +95,7 @@ bool report_log::put_aside()
         if (::access(name.c_str(), F_OK) == 0)
             continue;
         if (std::rename(d_path.c_str(), name.c_str()) != 0) {
-            d_error = d_path + ": cannot be put aside: " + std::generic_category().message(errno);
+            note(d_path, "cannot be put aside", errno);
             return true;
         }
         close();
@@ -118,6 +123,28 @@ void report_log::take_settings(report& line)
 std::string report_log::text_of(const report& line) const
 {
     return (d_torn ? "\n" : "") + (d_settings_due ? d_settings : "") + line.dump() + '\n';
+}
+
+bool report_log::keep(const std::string& carry)
+{
+    struct stat about {
+    };
+    if (::stat(d_path.c_str(), &about) == 0 && !S_ISREG(about.st_mode))
+        return true;
+    const auto path = carry_path(d_path), fresh = path + ".new";
+    const int file = ::open(fresh.c_str(), O_WRONLY | O_CREAT | O_TRUNC | O_CLOEXEC, 0644);
+    if (file < 0) {
+        note(fresh, "cannot be opened", errno);
+        return false;
+    }
+    const bool whole = write_all(file, carry) == carry.size() && ::fdatasync(file) == 0;
+    const int error = errno;
+    ::close(file);
+    if (whole && std::rename(fresh.c_str(), path.c_str()) == 0)
+        return true;
+    note(fresh, "cannot be written", whole ? errno : error);
+    ::unlink(fresh.c_str());
+    return false;
 }
 
 bool report_log::write(report line)

@@ -160,6 +160,11 @@ void reporter::add(const std::complex<float>* in,
     d->measured.add(in, reference, decided, count, [this](watch::window&& w) { d->put(std::move(w)); });
 }
 
+std::string reporter::carry() const
+{
+    return d->measured.carry().dump();
+}
+
 void reporter::set_lock(const lock_status& status)
 {
     const std::lock_guard held(d->stream);

@@ -9,9 +9,11 @@
 namespace halfplane::link {
 
 watch::reporting::reporting(const signal_set& set, watch_options options)
-    : d_set(set), d_options(std::move(options)), d_predictor(set, std::make_shared<awgn>(), d_options.rule),
-      d_curve(d_predictor), d_digest(sha256(settings().dump())), d_counts(set), d_waiting_counts(set)
+    : d_counts(set), d_set(set), d_options(std::move(options)),
+      d_predictor(set, std::make_shared<awgn>(), d_options.rule), d_curve(d_predictor),
+      d_digest(sha256(settings().dump())), d_waiting_counts(set)
 {
+    d_run.trial = trial(set, d_options.trial, d_options.confidence).state();
     if (set.size() <= most_points_for_transitions)
         d_expected.transitions.assign(set.size() * set.size(), 0);
 }
@@ -127,7 +129,7 @@ report watch::reporting::total(const window& w,
         out["seconds"] = account["in"].get<double>() / d_options.symbol_rate;
     out.update(account);
     if (d_lock)
-        out["slips"] = d_lock->slips;
+        out["slips"] = slips();
     out.update(frames_of(w.trial, frame_counts(), ends));
     if (const auto d = w.blocks.dispersion())
         out["dispersion"] = *d;
@@ -171,6 +173,7 @@ loss_question watch::reporting::asked(const std::optional<shortfall>& at_the_inp
 report watch::reporting::report_of(window&& w, bool final)
 {
     d_counts.merge(w.counts);
+    d_run = {w.blocks, w.seconds, w.trial, w.map_n0};
     d_fit.merge(w.fit);
     d_explanation.add(w.residuals);
     if (w.lock)

@@ -4,6 +4,7 @@
 
 #include "expected_errors.h"
 #include "explanation.h"
+#include "halfplane/carry.h"
 #include "halfplane/link/watch.h"
 #include "halfplane/ser_curve.h"
 #include "halfplane/shortfall.h"
@@ -22,7 +23,54 @@ struct watch::reporting {
     report report_of(window&& w, bool final);
     nlohmann::json settings() const { return settings_of(d_set, d_predictor, d_options); }
 
+    /// All but what was known of lock and input. See carry.h.
+    template <typename Archive>
+    void carry(Archive& a)
+    {
+        a("sequence", d_sequence);
+        a("counts", d_counts);
+        a("fit", d_fit);
+        a("expected", d_expected);
+        a("waiting_counts", d_waiting_counts);
+        a("waiting_fit", d_waiting_fit);
+        a("at_decision", d_at_decision);
+        a("last_stretch", d_last_stretch);
+        a("open_stretch", d_open_stretch);
+        a("explanation", d_explanation);
+        a("at_input", d_at_input);
+        a("errors_at_input", d_errors_at_input);
+        a("input_variance_sum", d_input_variance_sum);
+        auto all_slips = slips();
+        a("slips", all_slips);
+        d_slips_before += all_slips - slips();
+        a("run", d_run);
+        d_frames = d_run.trial.frames;
+    }
+
+    /// The counting half's state at the end of the last window.
+    struct run_state {
+        block_counts blocks;
+        second_counts seconds;
+        trial_state trial;
+        double map_n0 = 0;
+
+        template <typename Archive>
+        void carry(Archive& a)
+        {
+            a("blocks", blocks);
+            a("seconds", seconds);
+            auto saved = trial.save();
+            a("trial", saved);
+            if constexpr (std::is_same_v<Archive, carry_reader>)
+                trial.restore(saved);
+            a("map_n0", map_n0);
+        }
+    };
+    run_state d_run;
+    tally d_counts; ///< of the run
+
 private:
+    std::uint64_t slips() const { return d_slips_before + (d_lock ? d_lock->slips : 0); }
     /// The rungs at this Es/N0; the last answer is kept, as window and run mostly ask for the same.
     const rates& rates_at(double es_n0) const;
     void add_prediction(const window& w);
@@ -43,8 +91,7 @@ private:
     mutable std::optional<std::pair<double, rates>> d_last_rates;
 
     // The run so far.
-    std::uint64_t d_sequence = 0;
-    tally d_counts;
+    std::uint64_t d_sequence = 0, d_slips_before = 0; // slips of earlier runs
     gauge d_fit;
     frame_counts d_frames;
     std::optional<lock_status> d_lock;

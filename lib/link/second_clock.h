@@ -62,6 +62,9 @@ public:
         d_end = end_of(++d_second);
     }
 
+    /// Those of an earlier run count as well; its last second, cut short, does not.
+    void go_on(const second_counts& from) { d_counts = from; }
+
     /// Of the seconds that are over.
     const second_counts& counts() const noexcept { return d_counts; }
 

@@ -2,6 +2,8 @@
 // trial: symbols become steps of the bets, and frames.
 #include "halfplane/link/trial.h"
 
+#include "halfplane/carry.h"
+
 #include <algorithm>
 #include <sstream>
 #include <stdexcept>
@@ -28,6 +30,25 @@ bets_of(const error_target& target, const trial_options& options, double confide
 }
 
 } // namespace
+
+nlohmann::json trial_state::save() const
+{
+    nlohmann::json out = {{"frames", carry_writer::document(frames)},
+                          {"frame_blocks", carry_writer::document(frame_blocks)}};
+    if (bets)
+        out["bets"] = bets->save();
+    return out;
+}
+
+void trial_state::restore(const nlohmann::json& saved)
+{
+    carry_reader read(saved);
+    read("frames", frames);
+    frames.restart();
+    read("frame_blocks", frame_blocks);
+    if (bets)
+        bets->restore(saved.at("bets"));
+}
 
 trial::trial(const signal_set& set, const trial_options& options, double confidence)
     : d_labels(set.labels().begin(), set.labels().end()),

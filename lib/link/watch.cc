@@ -2,6 +2,7 @@
 // watch: the counting half, and the seam between the halves.
 #include "halfplane/link/watch.h"
 
+#include "carry_file.h"
 #include "halfplane/kernels/detect.h"
 #include "reporting.h"
 #include "second_clock.h"
@@ -53,6 +54,7 @@ void watch::window::merge(window&& later)
     blocks = later.blocks;
     seconds = later.seconds;
     trial = std::move(later.trial);
+    map_n0 = later.map_n0;
     pending = later.pending;
     if (later.lock)
         lock = later.lock;
@@ -94,6 +96,7 @@ struct watch::counting {
     void close(const window_handler& on_window);
     void follow_noise(double n0);
     void take_next_input(const window_handler& on_window);
+    void go_on(const reporting& from);
 
     const signal_set set;
     const bool receiver_decisions;
@@ -221,6 +224,7 @@ void watch::counting::close(const window_handler& on_window)
     if (map)
         if (const auto fit = open.fit.solve(set))
             follow_noise(fit->n0);
+    open.map_n0 = map_n0;
     window done(set);
     std::swap(done, open);
     open.first_symbol = handed;
@@ -240,11 +244,23 @@ void watch::counting::take_next_input(const window_handler& on_window)
         follow_noise(set.es() / from_db(input->es_n0_db));
 }
 
+/// From where the totals of an earlier run stand.
+void watch::counting::go_on(const reporting& from)
+{
+    blocks = from.d_run.blocks;
+    seconds.go_on(from.d_run.seconds);
+    on_trial.go_on(from.d_run.trial);
+    handed = open.first_symbol = from.d_counts.accounted();
+    follow_noise(from.d_run.map_n0);
+}
+
 watch::watch(const signal_set& set, watch_options options)
 {
     check(options);
     d_count = std::make_unique<counting>(set, options);
-    d_report = std::make_unique<reporting>(set, std::move(options));
+    d_report = std::make_unique<reporting>(set, options);
+    if (const auto carried = read_carry(options.resume))
+        restore(*carried);
 }
 
 watch::~watch() = default;
@@ -312,6 +328,25 @@ std::uint64_t watch::handed_in() const noexcept
 report watch::report_of(window&& w, bool final)
 {
     return d_report->report_of(std::move(w), final);
+}
+
+nlohmann::json watch::carry() const
+{
+    return {{"schema", "halfplane/carry/1"},
+            {"settings", settings()},
+            {"sums", carry_writer::document(*d_report)}};
+}
+
+void watch::restore(const nlohmann::json& carried)
+{
+    refuse_other_settings(carried.at("settings"), settings());
+    try {
+        carry_reader read(carried);
+        read("sums", *d_report);
+        d_count->go_on(*d_report);
+    } catch (const std::exception& error) {
+        refuse("resume: ", error.what());
+    }
 }
 
 nlohmann::json watch::settings() const

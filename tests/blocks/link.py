@@ -107,6 +107,34 @@ def test_verdict_in_the_report(target, state):
     assert total["frames"] == 20000 and total["fer_low"] < -np.expm1(10 * np.log1p(-0.01)) < total["fer_high"]
 
 
+def test_a_second_flowgraph_goes_on_from_the_log(tmp_path):
+    """Two flowgraphs, one log: the second's totals are those of both; other settings are refused."""
+    from gnuradio import blocks, gr
+
+    which, log = halfplane.load_set("psk:4"), str(tmp_path / "log.jsonl")
+    sent = np.random.default_rng(2).integers(4, size=40000)
+    decided = np.where(np.arange(40000) % 50 == 0, (sent + 1) % 4, sent)
+
+    def run(part):
+        watch = halfplane.link_watch(which, "", 1000, target="ser:0.1", resume=log)
+        writer, graph = halfplane.link_log(log), gr.top_block()
+        graph.connect(blocks.vector_source_c(np.array(which.points)[decided[part]].tolist()), (watch, 0))
+        graph.connect(blocks.vector_source_s(sent[part].tolist()), (watch, 1))
+        graph.msg_connect(watch, "report", writer, "report")
+        graph.run()
+        return json.loads(watch.report())
+
+    first, both = run(slice(0, 20000)), run(slice(20000, 40000))
+    assert first["total"]["judged"] == 20000 and both["total"]["judged"] == 40000 and both["total"]["symbol_errors"] == 800
+    assert both["window"]["first_symbol"] >= 20000 and both["sequence"] > first["sequence"]
+    assert both["verdict"]["log_wealth_pass"] > first["verdict"]["log_wealth_pass"]
+    lines = [json.loads(line) for line in open(log)]
+    assert [line["sequence"] for line in lines if "sequence" in line] == list(range(both["sequence"] + 1))
+    assert all("carry" not in line for line in lines)
+    with pytest.raises(ValueError, match='target was "ser:0.1" in the earlier run, is "ser:0.2"'):
+        halfplane.link_watch(which, "", 1000, target="ser:0.2", resume=log)
+
+
 def test_window_closes_and_the_last_one_is_counted():
     which = halfplane.load_set("psk:4")
     report, _, reference = run_link(which, 20.0, 12345, window=5000)

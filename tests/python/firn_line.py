@@ -22,7 +22,7 @@ def test_two_steps(what, tmp_path):
     values = "8..9/1" if what == "psk:2" else "12..14/2"
     done = firn_line("--es-n0", values, "--errors", "200", "--out", tmp_path, *options)
     assert done.returncode == 0, done.stderr
-    names = {"points.svg", "points.png", "shortfall.svg", "shortfall.png", "reports.jsonl"}
+    names = {"points.svg", "points.png", "shortfall.svg", "shortfall.png", "reports.jsonl", "reports.jsonl.carry"}
     assert {path.name for path in tmp_path.iterdir()} == names and all(path.stat().st_size > 500 for path in tmp_path.iterdir())
     lines = [json.loads(line) for line in (tmp_path / "reports.jsonl").read_text().splitlines()]
     assert lines[0]["schema"] == "halfplane/settings/1" and len(lines[0]["settings"]["points"]) > 1

@@ -38,10 +38,12 @@ public:
      * \param confidence  of the intervals, inside (0, 1)
      * \param symbol_rate in Hz; 0 where unknown
      * \param decisions   `own` (nearest point, or MAP where priors differ) or `receiver` (a third input)
-     * \param target      what the verdict is about: "ser:1e-3", "ber:1e-5", "fer:1e-2"; empty: no verdict
-     * \param frame_symbols symbols of a frame, at most 2^32; 0: no frames are counted. The first frame begins
-     * with the first symbol that is judged \param max_excluded share of symbols (frames) left out beyond
-     * which nothing passes, in 0 … 1 \throws std::invalid_argument naming parameter and value
+     * \param target      of the verdict: "ser:1e-3", "ber:1e-5", "fer:1e-2"; empty: no verdict
+     * \param frame_symbols  symbols of a frame, from the first judged one on, at most 2^32; 0: no frames
+     * \param max_excluded   share of symbols (frames) left out beyond which nothing passes, in 0 … 1
+     * \param resume      log of an earlier run that goes on here: totals, gauge, shortfall, verdict …
+     *                    (what its `link_log` left as path.carry); where there is no log a run begins
+     * \throws std::invalid_argument naming parameter and value, or what differs from the earlier run
      */
     static sptr make(const ::halfplane::signal_set& set,
                      const std::string& pattern,
@@ -51,7 +53,8 @@ public:
                      const std::string& decisions = "own",
                      const std::string& target = "",
                      std::uint64_t frame_symbols = 0,
-                     double max_excluded = 1e-3);
+                     double max_excluded = 1e-3,
+                     const std::string& resume = "");
 
     /// The latest report as JSON text; empty before the first. The final one after top_block.wait().
     virtual std::string report() const = 0;

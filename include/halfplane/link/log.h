@@ -44,6 +44,13 @@ public:
 
     /// Whether the line is on disk.
     bool write(report line);
+    /*!
+     * Beside the log: the state from which a later run goes on (watch::carry()), as path.carry, whole or as
+     * it was. To be called ahead of write(), so that nothing that is in the log is missing from it. Nothing
+     * is kept beside pipes and devices. Whether it is on disk; see last_error().
+     */
+    bool keep(const std::string& carry);
+    static std::string carry_path(const std::string& log) { return log + ".carry"; }
     /// Of the settings that are known: a report under the same may come without them. Empty at first.
     const std::string& settings_digest() const noexcept { return d_digest; }
 
@@ -60,6 +67,7 @@ private:
     void close();
     bool put_aside();
     void take_settings(report& line);
+    void note(const std::string& path, const char* doing, int error);
     std::string text_of(const report& line) const;
     bool fail(const char* doing, int error);
 

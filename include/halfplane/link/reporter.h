@@ -48,6 +48,8 @@ public:
 
     /// The last report that was made.
     std::optional<report> latest() const;
+    /// What watch::carry() says of the run up to the report at hand, as text. From within `on_report` only.
+    std::string carry() const;
     /// How many were made, and how many windows were merged into a later report because the worker was late.
     std::uint64_t reports() const;
     std::uint64_t merged_windows() const;

@@ -13,6 +13,7 @@
 #include <cstdint>
 #include <optional>
 #include <string>
+#include <utility>
 #include <vector>
 
 namespace halfplane::link {
@@ -33,6 +34,11 @@ struct trial_state {
     block_counts frame_blocks; ///< whether frame errors cluster
     std::optional<error_target> target;
     std::optional<verdict> bets;
+
+    /// What restore() takes.
+    nlohmann::json save() const;
+    /// Goes on with another run's. The frame under way there is given up. \throws std::invalid_argument
+    void restore(const nlohmann::json& saved);
 };
 
 /*!
@@ -53,6 +59,8 @@ public:
     /// One symbol that is not judged.
     void left_out(std::size_t cause);
     const trial_state& state() const noexcept { return d; }
+    /// From where another run stood.
+    void go_on(trial_state from) { d = std::move(from); }
 
 private:
     void take_frames(std::uint64_t count, bool in_error);

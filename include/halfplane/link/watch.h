@@ -44,6 +44,11 @@ struct watch_options {
     std::uint64_t window = 10000;    ///< symbols handed in, judged or not, after which a window closes; ≥ 1
     bool explain = true;             ///< gather what losses and premises are made of
     trial_options trial;             ///< frames, and the target of the verdict
+    /*!
+     * Path of the log of an earlier run with the same settings that is to go on: of what stands beside it as
+     * PATH.carry. Empty, or a log that does not exist yet: a new run.
+     */
+    std::string resume;
     /// UTC, RFC 3339; the system's clock where empty. What gives no text leaves `time` out.
     std::function<std::string()> clock;
 };
@@ -72,6 +77,7 @@ public:
         trial_state trial; ///< of the run up to the window's end
         std::optional<lock_status> lock;
         std::uint64_t pending = 0;
+        double map_n0 = 0; ///< what decisions from here on are made with; 0: nearest point
         /// Judged symbols and their errors by what was known of the input meanwhile.
         struct input_part {
             input_snr input;
@@ -83,7 +89,8 @@ public:
     };
     using window_handler = std::function<void(window&&)>;
 
-    /// \throws std::invalid_argument naming the option and its value
+    /// \throws std::invalid_argument naming the option and its value, or what of the settings to `resume`
+    /// differs
     watch(const signal_set& set, watch_options options);
     ~watch();
     watch(watch&&) noexcept;
@@ -118,7 +125,14 @@ public:
     /// What must be equal for two runs to be one: the document whose digest the report carries.
     nlohmann::json settings() const;
 
+    /*!
+     * All that another watch needs to go on after the last report that was made: sums of the run, exactly;
+     * what was known of lock and input is not among them. For the thread that calls report_of().
+     */
+    nlohmann::json carry() const;
+
 private:
+    void restore(const nlohmann::json& carried);
     struct counting;
     struct reporting;
     std::unique_ptr<counting> d_count;
