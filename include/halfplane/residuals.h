@@ -66,6 +66,7 @@ struct residual_moments {
         a("signal_fourth", signal_fourth);
         a("pairs", pairs);
         a("lag_one", lag_one);
+        a("lag_one_norm", lag_one_norm);
         a("blocks", blocks);
         a("block_powers", block_powers);
         a("stretches", stretches);

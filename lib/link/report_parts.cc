@@ -28,6 +28,8 @@ report rates_of(const std::array<double, 4>& ser, const std::array<double, 4>& b
     return all;
 }
 
+} // namespace
+
 void put_interval(report& out, const std::string& name, double rate, const interval& ends)
 {
     out[name] = rate;
@@ -35,8 +37,6 @@ void put_interval(report& out, const std::string& name, double rate, const inter
         out[name + "_low"] = *ends.low;
     out[name + "_high"] = ends.high;
 }
-
-} // namespace
 
 std::string utc_now()
 {
@@ -283,14 +283,11 @@ report frames_of(const trial_state& now, const frame_counts& before, const run_i
     return out;
 }
 
-report verdict_of(const trial_state& trial, const tally& counts)
+report verdict_of(const error_target& target,
+                  const verdict& bets,
+                  std::uint64_t excluded,
+                  std::uint64_t frame_length)
 {
-    const auto target = *trial.target;
-    const auto& bets = *trial.bets;
-    const bool by_frame = target.kind == error_kind::fer;
-    const auto before_lock = static_cast<std::size_t>(-1 - code(exclusion::before_lock));
-    const auto excluded = by_frame ? trial.frames.all_excluded()
-                                   : counts.accounted() - counts.symbols - counts.excluded[before_lock];
     const auto now = bets.look(excluded);
     report out = {{"target", {{to_string(target.kind), target.rate}}}, {"state", to_string(now.state)}};
     if (now.log_wealth_pass)
@@ -302,8 +299,17 @@ report verdict_of(const trial_state& trial, const tally& counts)
     if (const auto all = bets.steps() + excluded; all > 0)
         out["excluded_share"] = static_cast<double>(excluded) / static_cast<double>(all);
     if (const auto steps = bets.steps_to_go(excluded))
-        out["symbols_to_go"] = by_frame ? *steps * trial.frames.length() : *steps;
+        out["symbols_to_go"] = target.kind == error_kind::fer ? *steps * frame_length : *steps;
     return out;
+}
+
+report verdict_of(const trial_state& trial, const tally& counts)
+{
+    const auto before_lock = static_cast<std::size_t>(-1 - code(exclusion::before_lock));
+    const auto excluded = trial.target->kind == error_kind::fer
+                              ? trial.frames.all_excluded()
+                              : counts.accounted() - counts.symbols - counts.excluded[before_lock];
+    return verdict_of(*trial.target, *trial.bets, excluded, trial.frames.length());
 }
 
 report transitions_of(const transition_counts& counted,

@@ -54,6 +54,11 @@ report failing_of(const std::vector<premise>& premises);
 report seconds_of(const second_counts& s);
 /// Frames of `now`, of those since `before` where there is one; nothing where none are counted.
 report frames_of(const trial_state& now, const frame_counts& before, const run_intervals& ends);
+report verdict_of(const error_target& target,
+                  const verdict& bets,
+                  std::uint64_t excluded,
+                  std::uint64_t frame_length);
+void put_interval(report& out, const std::string& name, double rate, const interval& ends);
 /// \param counts of the run. Symbols before the lock are no excluded ones here: nothing was claimed of them
 /// yet.
 report verdict_of(const trial_state& trial, const tally& counts);

@@ -18,6 +18,7 @@ if TYPE_CHECKING:
 _BLOCKS = (
     "aligner",
     "json_to_pmt",
+    "error_tally",
     "link_log",
     "link_watch",
     "llr_detector",

@@ -14,6 +14,7 @@ PYBIND11_MODULE(blocks_python, m)
     bind_link_log(m);
     bind_link_watch(m);
     bind_llr_detector(m);
+    bind_error_tally(m);
     bind_noise_at(m);
     bind_point_detector(m);
     bind_point_mapper(m);
