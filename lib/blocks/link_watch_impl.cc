@@ -39,7 +39,8 @@ bool from_receiver(const std::string& decisions)
                                             const std::string& target,
                                             std::uint64_t frame_symbols,
                                             double max_excluded,
-                                            const std::string& resume)
+                                            const std::string& resume,
+                                            bool explain)
 {
     ::halfplane::link::watch_options options;
     options.pattern = pattern;
@@ -57,6 +58,7 @@ bool from_receiver(const std::string& decisions)
     options.receiver_decisions = from_receiver(decisions);
     options.trial = {target, frame_symbols, max_excluded};
     options.resume = resume;
+    options.explain = explain;
     return options;
 }
 
@@ -71,7 +73,8 @@ link_watch::sptr link_watch::make(const ::halfplane::signal_set& set,
                                   const std::string& target,
                                   std::uint64_t frame_symbols,
                                   double max_excluded,
-                                  const std::string& resume)
+                                  const std::string& resume,
+                                  bool explain)
 {
     return gnuradio::make_block_sptr<link_watch_impl>(set,
                                                       pattern,
@@ -82,7 +85,8 @@ link_watch::sptr link_watch::make(const ::halfplane::signal_set& set,
                                                       target,
                                                       frame_symbols,
                                                       max_excluded,
-                                                      resume);
+                                                      resume,
+                                                      explain);
 }
 
 link_watch_impl::link_watch_impl(const ::halfplane::signal_set& set,
@@ -94,7 +98,8 @@ link_watch_impl::link_watch_impl(const ::halfplane::signal_set& set,
                                  const std::string& target,
                                  std::uint64_t frame_symbols,
                                  double max_excluded,
-                                 const std::string& resume)
+                                 const std::string& resume,
+                                 bool explain)
     : gr::sync_block(
           "link_watch",
           from_receiver(decisions)
@@ -110,7 +115,8 @@ link_watch_impl::link_watch_impl(const ::halfplane::signal_set& set,
                             target,
                             frame_symbols,
                             max_excluded,
-                            resume),
+                            resume,
+                            explain),
                  {0.1, [this](const ::halfplane::link::report& made) { publish(made); }})
 {
     d_settings = json_to_pmt(d_reporter.settings());

@@ -24,7 +24,8 @@ public:
                     const std::string& target,
                     std::uint64_t frame_symbols,
                     double max_excluded,
-                    const std::string& resume);
+                    const std::string& resume,
+                    bool explain);
     ~link_watch_impl() override;
 
     std::string report() const override;

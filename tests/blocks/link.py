@@ -186,3 +186,18 @@ def test_the_receivers_own_decisions_are_counted():
 def test_refused(make, message):
     with pytest.raises(ValueError, match=message):
         make(halfplane.load_set("psk:4"))
+
+
+def test_losses_and_premises_are_left_out_on_request():
+    which = halfplane.load_set("psk:4")
+    sent = np.random.default_rng(1).integers(4, size=40000)
+    points = np.array(which.points)[sent] + 0.2 * np.random.default_rng(2).normal(size=40000)
+    for explain in (True, False):
+        from gnuradio import blocks, gr
+
+        watch = halfplane.link_watch(which, "", 5000, explain=explain)
+        graph = gr.top_block()
+        graph.connect(blocks.vector_source_c(points.tolist()), (watch, 0))
+        graph.connect(blocks.vector_source_s(sent.tolist()), (watch, 1))
+        graph.run()
+        assert ("premises" in json.loads(watch.report())) == explain

@@ -43,6 +43,7 @@ public:
      * \param max_excluded   share of symbols (frames) left out beyond which nothing passes, in 0 … 1
      * \param resume      log of an earlier run that goes on here: totals, gauge, shortfall, verdict …
      *                    (what its `link_log` left as path.carry); where there is no log a run begins
+     * \param explain     gather what losses and premises are made of
      * \throws std::invalid_argument naming parameter and value, or what differs from the earlier run
      */
     static sptr make(const ::halfplane::signal_set& set,
@@ -54,7 +55,8 @@ public:
                      const std::string& target = "",
                      std::uint64_t frame_symbols = 0,
                      double max_excluded = 1e-3,
-                     const std::string& resume = "");
+                     const std::string& resume = "",
+                     bool explain = true);
 
     /// The latest report as JSON text; empty before the first. The final one after top_block.wait().
     virtual std::string report() const = 0;

@@ -22,7 +22,8 @@ intervals, inside (0, 1). symbol_rate: Hz, 0 where unknown. decisions: 'own' or 
 
 target: what the verdict is about, 'ser:1e-3', 'ber:1e-5' or 'fer:1e-2', '' for none. frame_symbols: symbols of a
 frame, 0 for none. max_excluded: share left out beyond which nothing passes. resume: path of the log of an earlier run that
-goes on here, with the same settings.
+goes on here, with the same settings. explain: False
+leaves losses and premises out.
 
 Message ports: 'report' out (dict), 'input' in (from noise_at or a meter). Raises ValueError naming parameter and
 value.)doc")
@@ -36,7 +37,8 @@ value.)doc")
              py::arg("target") = "",
              py::arg("frame_symbols") = std::uint64_t{0},
              py::arg("max_excluded") = 1e-3,
-             py::arg("resume") = "")
+             py::arg("resume") = "",
+             py::arg("explain") = true)
         .def("report",
              &link_watch::report,
              py::call_guard<py::gil_scoped_release>(),
