@@ -13,6 +13,9 @@ struct interval {
     double high;
 };
 
+/// Largest relative error of both ends; measured on counts to 2000 of 1e15 trials.
+inline constexpr double interval_accuracy = 1e-9;
+
 /*!
  * Exact binomial interval (Clopper and Pearson, Biometrika 26 (1934) 404).
  * \param errors     counted errors, ≤ trials
@@ -20,9 +23,6 @@ struct interval {
  * \param confidence two-sided, in (0, 1); with errors = 0 the upper end is one-sided
  * \throws std::invalid_argument outside these ranges
  */
-/// Largest relative error of both ends; measured on counts to 2000 of 1e15 trials.
-inline constexpr double interval_accuracy = 1e-9;
-
 interval binomial_interval(std::uint64_t errors, std::uint64_t trials, double confidence);
 
 /*!

@@ -9,6 +9,7 @@ PYBIND11_MODULE(core_python, m)
     m.attr("__version__") = HALFPLANE_VERSION;
     halfplane::python::bind_sets(m);
     halfplane::python::bind_set_files(m);
+    halfplane::python::bind_laws(m);
     halfplane::python::bind_rates(m);
     halfplane::python::bind_geometry(m);
     halfplane::python::bind_measures(m);

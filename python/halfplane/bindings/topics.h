@@ -21,6 +21,7 @@ using complexes = py::array_t<std::complex<double>, py::array::c_style | py::arr
 
 void bind_sets(py::module_& m);
 void bind_set_files(py::module_& m);
+void bind_laws(py::module_& m);
 void bind_rates(py::module_& m);
 void bind_geometry(py::module_& m);
 void bind_measures(py::module_& m);
