@@ -235,10 +235,13 @@ void llr_decider::decide(const std::complex<float>* in, float* out, std::size_t 
     constexpr std::size_t block = 512;
     std::uint16_t decided[block];
     std::vector<float> scratch(d->view.scratch());
+    const bool wanted = d->view.wants_decisions();
     while (count > 0) {
         const std::size_t n = std::min(count, block);
-        d->nearest.decide(in, decided, n);
-        loops().llr(d->view, reinterpret_cast<const float*>(in), decided, out, n, scratch.data());
+        if (wanted)
+            d->nearest.decide(in, decided, n);
+        loops().llr(
+            d->view, reinterpret_cast<const float*>(in), wanted ? decided : nullptr, out, n, scratch.data());
         in += n, out += n * d->view.label_bits, count -= n;
     }
 }

@@ -155,15 +155,13 @@ inline void max_ratios(const llr_part& v, float* __restrict value, float (*ratio
     }
 }
 
-constexpr std::size_t few_points = 16;
-
 /// For parts of few points: all metrics are kept, and measured from the largest. No sample is looked up.
 inline void few_differences(const llr_part& v,
                             const double* __restrict x,
                             const double* __restrict y,
                             float* __restrict value)
 {
-    alignas(64) double metric[few_points][lanes];
+    alignas(64) double metric[llr_part::most_kept][lanes];
     alignas(64) double top[lanes];
     for (std::size_t l = 0; l < lanes; ++l)
         top[l] = metric[0][l] = x[l] * v.re[0] + y[l] * v.im[0] + v.constant[0];
@@ -222,7 +220,7 @@ inline void part_ratios(const llr_view& whole,
                         float (*ratio)[lanes])
 {
     float own[16][lanes];
-    if (v.size <= few_points) {
+    if (v.few()) {
         few_differences(v, x, y, value);
     } else {
         double reference[lanes];
@@ -276,23 +274,20 @@ void llr(const llr_view& v,
     float ratio[16][lanes];
     while (count > 0) {
         const std::size_t n = count < lanes ? count : lanes;
-        alignas(64) float sample[2 * lanes];
-        std::uint16_t near[lanes];
-        if (n == lanes) {
-            __builtin_memcpy(sample, in, sizeof sample);
-            __builtin_memcpy(near, decided, sizeof near);
-        } else { // the rest is filled up with samples that are none
-            for (std::size_t l = 0; l < lanes; ++l) {
-                sample[2 * l] = l < n ? in[2 * l] : 0;
-                sample[2 * l + 1] = l < n ? in[2 * l + 1] : 0;
-                near[l] = l < n ? decided[l] : static_cast<std::uint16_t>(0xffff);
-            }
-        }
+        alignas(64) float sample[2 * lanes] = {};
+        std::uint16_t near[lanes] = {};
+        __builtin_memcpy(sample, in, 2 * n * sizeof(float));
+        if (decided)
+            __builtin_memcpy(near, decided, n * sizeof near[0]);
         alignas(64) std::uint32_t finite[lanes]; // all ones, or zero
         alignas(64) double x[lanes], y[lanes];
         alignas(64) float speaks[lanes];
-        for (std::size_t l = 0; l < lanes; ++l)
-            finite[l] = near[l] != 0xffff ? ~std::uint32_t{0} : 0u;
+        constexpr std::uint32_t exponent_bits = 0x7f800000u; // all set: infinite, or not a number
+        for (std::size_t l = 0; l < lanes; ++l) {
+            const std::uint32_t re = as_bits(sample[2 * l]) & exponent_bits,
+                                im = as_bits(sample[2 * l + 1]) & exponent_bits;
+            finite[l] = (re != exponent_bits) & (im != exponent_bits) ? ~std::uint32_t{0} : 0u;
+        }
         for (std::size_t l = 0; l < lanes; ++l) {
             x[l] = static_cast<double>(as_float(as_bits(sample[2 * l]) & finite[l]));
             y[l] = static_cast<double>(as_float(as_bits(sample[2 * l + 1]) & finite[l]));
@@ -309,7 +304,9 @@ void llr(const llr_view& v,
                 ratio[bit][l] = speaks[l] * (low < limit ? low : limit);
             }
         write(ratio, bits, n, out);
-        in += 2 * n, decided += n, out += n * bits, count -= n;
+        in += 2 * n, out += n * bits, count -= n;
+        if (decided)
+            decided += n;
     }
 }
 

@@ -22,6 +22,9 @@ struct llr_part {
     const std::uint8_t* position;    ///< of bit k within a sample's ratios
     const std::uint16_t* place;      ///< by index in the set, the place in the arrays above
     bool near_is_enough;             ///< the nearest point's metric may stand in for the largest
+    /// Few enough points for all metrics to be kept: the largest is found on the way, no decision is wanted.
+    static constexpr std::size_t most_kept = 16;
+    bool few() const { return size <= most_kept; }
 };
 
 /*!
@@ -36,6 +39,14 @@ struct llr_view {
     unsigned label_bits;
     bool exact;
     float sign, saturation;
+    /// Whether the nearest point of each sample is wanted.
+    bool wants_decisions() const
+    {
+        for (unsigned p = 0; p < parts; ++p)
+            if (!part[p].few())
+                return true;
+        return false;
+    }
     std::size_t scratch() const { return 2 * lanes << label_bits; } ///< floats
 };
 
