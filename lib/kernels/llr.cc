@@ -60,6 +60,15 @@ struct part {
         // more.
         view.near_is_enough = std::log(most / least) < 60;
         view.size = members.size(), view.bits = bits;
+        view.axis = llr_part::both;
+        const auto all = [&](auto coordinate) {
+            return std::all_of(
+                members.begin(), members.end(), [&](const member& m) { return coordinate(m.point) == 0; });
+        };
+        if (all([](complex s) { return s.imag(); }))
+            view.axis = llr_part::in_phase;
+        else if (all([](complex s) { return s.real(); }))
+            view.axis = llr_part::quadrature;
     }
 
     void lay(double n0)

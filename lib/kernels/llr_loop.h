@@ -156,26 +156,35 @@ inline void max_ratios(const llr_part& v, float* __restrict value, float (*ratio
 }
 
 /// For parts of few points: all metrics are kept, and measured from the largest. No sample is looked up.
-inline void few_differences(const llr_part& v,
-                            const double* __restrict x,
-                            const double* __restrict y,
-                            float* __restrict value)
+template <typename Metric>
+inline void few_differences(const llr_part& v, float* __restrict value, Metric metric_of)
 {
     alignas(64) double metric[llr_part::most_kept][lanes];
     alignas(64) double top[lanes];
     for (std::size_t l = 0; l < lanes; ++l)
-        top[l] = metric[0][l] = x[l] * v.re[0] + y[l] * v.im[0] + v.constant[0];
-    for (std::size_t i = 1; i < v.size; ++i) {
-        const double re = v.re[i], im = v.im[i], constant = v.constant[i];
+        top[l] = metric[0][l] = metric_of(0, l);
+    for (std::size_t i = 1; i < v.size; ++i)
         for (std::size_t l = 0; l < lanes; ++l) {
-            const double m = x[l] * re + y[l] * im + constant;
+            const double m = metric_of(i, l);
             metric[i][l] = m;
             top[l] = m > top[l] ? m : top[l];
         }
-    }
     for (std::size_t i = 0; i < v.size; ++i)
         for (std::size_t l = 0; l < lanes; ++l)
             value[v.label[i] * lanes + l] = larger(static_cast<float>(metric[i][l] - top[l]), deepest);
+}
+
+inline void few_differences(const llr_part& v, const double* x, const double* y, float* value)
+{
+    const double *re = v.re, *im = v.im, *constant = v.constant;
+    if (v.axis == llr_part::in_phase)
+        few_differences(v, value, [=](std::size_t i, std::size_t l) { return x[l] * re[i] + constant[i]; });
+    else if (v.axis == llr_part::quadrature)
+        few_differences(v, value, [=](std::size_t i, std::size_t l) { return y[l] * im[i] + constant[i]; });
+    else
+        few_differences(v, value, [=](std::size_t i, std::size_t l) {
+            return x[l] * re[i] + y[l] * im[i] + constant[i];
+        });
 }
 
 /// Bit by bit to sample by sample, `bits` of them.

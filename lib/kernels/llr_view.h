@@ -22,6 +22,8 @@ struct llr_part {
     const std::uint8_t* position;    ///< of bit k within a sample's ratios
     const std::uint16_t* place;      ///< by index in the set, the place in the arrays above
     bool near_is_enough;             ///< the nearest point's metric may stand in for the largest
+    enum axis_kind { both, in_phase, quadrature };
+    axis_kind axis; ///< the coordinate that metrics depend on; the other factor is 0
     /// Few enough points for all metrics to be kept: the largest is found on the way, no decision is wanted.
     static constexpr std::size_t most_kept = 16;
     bool few() const { return size <= most_kept; }
