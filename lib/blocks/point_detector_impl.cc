@@ -21,7 +21,7 @@ point_decider make_decider(const ::halfplane::signal_set& set, double n0)
     return n0 > 0 ? point_decider(set, n0) : point_decider(set);
 }
 
-constexpr std::uint8_t no_bit = 255;
+constexpr std::uint8_t nothing = 255; // a byte that is no bit and no index
 
 } // namespace
 
@@ -48,6 +48,7 @@ point_detector_impl::point_detector_impl(const ::halfplane::signal_set& set,
       d_format(parse_symbol_format("point_detector", "output", output)),
       d_current(std::make_shared<const decision>(set, n0))
 {
+    require_room("point_detector", d_format, set);
 }
 
 std::shared_ptr<const point_detector_impl::decision> point_detector_impl::current() const
@@ -75,6 +76,7 @@ double point_detector_impl::n0() const
 void point_detector_impl::set_signal_set(const ::halfplane::signal_set& set)
 {
     const auto now = current();
+    require_room("point_detector", d_format, set);
     if (d_format == symbol_format::bits)
         checked("point_detector",
                 "label bits of the new set",
@@ -106,10 +108,16 @@ int point_detector_impl::work(int noutput_items, gr_vector_const_void_star& in, 
                            : static_cast<std::int16_t>(labels[d_indices[k]]);
         return noutput_items;
     }
+    if (d_format == symbol_format::byte_indices) {
+        auto* index = static_cast<std::uint8_t*>(out[0]);
+        for (std::size_t k = 0; k < count; ++k) // 0xffff, for what is not finite, becomes 255
+            index[k] = static_cast<std::uint8_t>(d_indices[k]);
+        return noutput_items;
+    }
     auto* bit = static_cast<std::uint8_t*>(out[0]);
     for (std::size_t k = 0; k < count; ++k)
         for (unsigned place = interpolation(); place-- > 0;)
-            *bit++ = d_indices[k] == point_decider::nonfinite ? no_bit : labels[d_indices[k]] >> place & 1u;
+            *bit++ = d_indices[k] == point_decider::nonfinite ? nothing : labels[d_indices[k]] >> place & 1u;
     return noutput_items;
 }
 

@@ -22,6 +22,7 @@ point_mapper_impl::point_mapper_impl(const ::halfplane::signal_set& set, const s
       d_set(set), d_format(parse_symbol_format("point_mapper", "input", input)),
       d_points(set.points().begin(), set.points().end())
 {
+    require_room("point_mapper", d_format, set);
 }
 
 /// Index of symbol k of the input, or −1 where the set has no such symbol.
@@ -30,6 +31,10 @@ int point_mapper_impl::symbol_at(const void* in, int k) const
     switch (d_format) {
     case symbol_format::indices: {
         const int index = static_cast<const std::int16_t*>(in)[k];
+        return index < static_cast<int>(d_set.size()) ? index : -1;
+    }
+    case symbol_format::byte_indices: {
+        const int index = static_cast<const std::uint8_t*>(in)[k];
         return index < static_cast<int>(d_set.size()) ? index : -1;
     }
     case symbol_format::labels: {

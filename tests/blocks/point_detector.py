@@ -51,6 +51,32 @@ def test_labels_and_bits(size):
     assert np.array_equal(bits.reshape(-1, label_bits), (expected[:, None] >> np.arange(label_bits)[::-1]) & 1)
 
 
+@pytest.mark.parametrize("chunk", AWKWARD_CHUNKS)
+@pytest.mark.parametrize("size", [2, 12, 255])
+def test_indices_as_bytes(size, chunk):
+    rng = np.random.default_rng(size)
+    which, points, _, _ = random_set(size, rng)
+    samples = samples_about(points, 3001, rng)
+    samples[17] = np.nan
+    out = run_through(halfplane.point_detector(which, "byte_indices"), samples, "c", "b", chunk)
+    shorts = run_through(halfplane.point_detector(which), samples, "c", "s")
+    assert shorts[17] == -1 and out[17] == 255
+    assert np.array_equal(np.delete(out, 17), np.delete(shorts, 17))
+    back = run_through(halfplane.point_mapper(which, "byte_indices"), np.delete(out, 17), "b", "c")
+    assert np.array_equal(back, points[np.delete(shorts, 17)].astype(np.complex64))
+
+
+def test_bytes_hold_no_more_than_255_indices():
+    which, _, _, _ = random_set(256, np.random.default_rng(1))
+    for block in (halfplane.point_detector, halfplane.point_mapper):
+        with pytest.raises(ValueError, match="byte_indices hold sets of up to 255 points, this one has 256"):
+            block(which, "byte_indices")
+    small, _, _, _ = random_set(12, np.random.default_rng(2))
+    detector = halfplane.point_detector(small, "byte_indices")
+    with pytest.raises(ValueError, match="this one has 256"):
+        detector.set_signal_set(which)
+
+
 def test_mapper_and_detector_invert_each_other_on_bits():
     rng = np.random.default_rng(3)
     which, _, _, label_bits = random_set(64, rng)

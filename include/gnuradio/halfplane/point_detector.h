@@ -16,7 +16,8 @@ namespace gr::halfplane {
  * cost does not grow with the number of points. The set stands for the points as they arrive: gain and phase
  * must have been taken out before.
  *
- * A sample that is NaN or infinite has no nearest point: its index and label are −1, its bits 255.
+ * A sample that is NaN or infinite has no nearest point: its index and label are −1, as a byte 255, as
+ * are its bits.
  */
 class point_detector : virtual public gr::sync_interpolator
 {
@@ -25,7 +26,8 @@ public:
 
     /*!
      * \param set    the constellation
-     * \param output `indices` (int16, one a sample), `labels` (int16, the label as a number), or `bits`
+     * \param output `indices` (int16, one a sample), `byte_indices` (bytes, sets of up to 255 points),
+     * `labels` (int16, the label as a number), or `bits`
      * (bytes, one bit a byte, label_bits() a sample, leftmost bit first) \param n0     noise density N0 for
      * MAP decisions, > 0, in the square of the points' unit; 0: nearest point \throws std::invalid_argument
      * naming parameter and value

@@ -24,9 +24,10 @@ public:
 
     /*!
      * \param set   the constellation; M from 2 to 4096
-     * \param input what comes in: `indices` (int16, one a symbol, 0 … M−1), `labels` (int16, one a symbol,
-     * the label as a number), or `bits` (bytes, one bit a byte in its lowest bit, label_bits() a symbol,
-     * leftmost bit first) \throws std::invalid_argument where `input` is none of these
+     * \param input what comes in: `indices` (int16, one a symbol, 0 … M−1), `byte_indices` (bytes, sets of up
+     * to 255 points), `labels` (int16, one a symbol, the label as a number), or `bits` (bytes, one bit a byte
+     * in its lowest bit, label_bits() a symbol, leftmost bit first) \throws std::invalid_argument where
+     * `input` is none of these
      */
     static sptr make(const ::halfplane::signal_set& set, const std::string& input = "indices");
 };

@@ -20,10 +20,10 @@ void bind_point_detector(py::module& m)
         "point_detector",
         R"doc(Exact decisions on complex samples: the nearest point, or the most probable one where n0 is given.
 
-set: the constellation, at the scale of the samples. output: 'indices' (short), 'labels' (short, the label as a
+set: the constellation, at the scale of the samples. output: 'indices' (short), 'byte_indices' (bytes,
+sets of up to 255 points), 'labels' (short, the label as a
 number) or 'bits' (bytes, label_bits a sample, leftmost bit first). n0: noise density for MAP decisions, in the
-square of the points' unit; 0 decides for the nearest point. NaN and infinite samples give -1, or 255 for each
-bit. Raises ValueError naming parameter and value.)doc")
+square of the points' unit; 0 decides for the nearest point. NaN and infinite samples give -1, or 255 where bytes come out. Raises ValueError naming parameter and value.)doc")
         .def(py::init(&point_detector::make),
              py::arg("set"),
              py::arg("output") = "indices",
