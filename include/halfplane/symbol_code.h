@@ -21,6 +21,19 @@ enum class exclusion : reference_t {
 };
 constexpr int exclusion_count = 4;
 
+/*!
+ * Live traffic: nobody knows what was sent. Such a symbol is neither judged nor excluded; it is gauged
+ * blindly. Not an exclusion, so it stands behind those.
+ */
+constexpr reference_t live_code = -1 - exclusion_count;
+
+/*!
+ * Added to an index that is known only because the receiver decoded it well (a frame encoded anew after its
+ * checksum held). Frames that failed are missing among these, so they flatter: they are counted apart from
+ * what was known in advance. A set has at most 4,096 points, so the bit is free.
+ */
+constexpr reference_t decoded_flag = 0x1000;
+
 constexpr reference_t code(exclusion e) noexcept
 {
     return static_cast<reference_t>(e);
