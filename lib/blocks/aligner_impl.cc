@@ -3,10 +3,9 @@
 #include "aligner_impl.h"
 
 #include "checks.h"
+#include "input_ended.h"
 #include "lock_pmt.h"
 
-#include <gnuradio/block_detail.h>
-#include <gnuradio/buffer_reader.h>
 #include <gnuradio/io_signature.h>
 
 #include <algorithm>
@@ -89,14 +88,7 @@ void aligner_impl::forecast(int, gr_vector_int& ninput_items_required)
 {
     // Any input is worth taking: at first it fills the hold-back and nothing comes out. Once the input has
     // ended, what is held back comes out without any.
-    ninput_items_required[0] = input_ended() ? 0 : 1;
-}
-
-bool aligner_impl::input_ended() const
-{
-    const auto input = detail()->input(0);
-    const gr::thread::scoped_lock guard(*input->mutex());
-    return input->done() && input->items_available() == 0;
+    ninput_items_required[0] = input_ended(*this) ? 0 : 1;
 }
 
 /// What was held back when the input ended, as far as there is room.
@@ -165,7 +157,7 @@ int aligner_impl::general_work(int noutput_items,
     const auto* samples = static_cast<const gr_complex*>(in[0]);
     auto* corrected = static_cast<gr_complex*>(out[0]);
     auto* reference = static_cast<reference_t*>(out[1]);
-    if (d_ended || (ninput_items[0] == 0 && input_ended()))
+    if (d_ended || (ninput_items[0] == 0 && input_ended(*this)))
         return empty_holdback(noutput_items, corrected, reference);
     const auto taken = static_cast<std::uint64_t>(std::min(noutput_items, ninput_items[0]));
     const std::uint64_t first = nitems_read(0), end = first + taken, first_output = nitems_written(0);

@@ -33,7 +33,6 @@ public:
 private:
     std::vector<std::uint64_t> overflows_before(std::uint64_t end);
     void announce(std::uint64_t first_output);
-    bool input_ended() const;
     int empty_holdback(int room, gr_complex* corrected, ::halfplane::reference_t* reference);
 
     const ::halfplane::pattern d_pattern;

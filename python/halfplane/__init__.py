@@ -19,6 +19,7 @@ _BLOCKS = (
     "aligner",
     "json_to_pmt",
     "error_tally",
+    "known_spans",
     "link_log",
     "link_watch",
     "llr_detector",
