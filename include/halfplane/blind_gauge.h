@@ -75,7 +75,7 @@ struct blind_result {
 struct blind_start {
     complex gain{1, 0};
     complex offset;
-    double n0; ///< > 0
+    double n0 = 1; ///< > 0
 };
 
 /*!

@@ -25,7 +25,7 @@ namespace halfplane {
 class frame_counts
 {
 public:
-    static constexpr std::size_t causes = 5;
+    static constexpr std::size_t causes = 6;
 
     /// \param length steps of a frame; 0: no frames are counted
     explicit frame_counts(std::uint64_t length = 0) : d_length(length) {}

@@ -35,6 +35,8 @@ public:
     std::uint64_t bit_errors_squared = 0; ///< Σh² over erroneous symbols, h the wrong bits of one symbol
     std::uint64_t nonfinite = 0;          ///< NaN or Inf where a reference was known
     std::array<std::uint64_t, exclusion_count> excluded{}; ///< by cause, in the order of `exclusion`
+    std::uint64_t live = 0;                                ///< live traffic: nobody knows what was sent
+    std::uint64_t decoded = 0;                             ///< known only by decoding, so tallied elsewhere
     std::vector<std::uint64_t> sent;                       ///< judged symbols by index sent
     std::vector<std::uint64_t> by_bit;                     ///< bit errors by position, [0] the leftmost
     transition_counts transitions;                         ///< errors only
@@ -50,12 +52,14 @@ public:
         a("bit_errors_squared", bit_errors_squared);
         a("nonfinite", nonfinite);
         a("excluded", excluded);
+        a("live", live);
+        a("decoded", decoded);
         a("sent", sent);
         a("by_bit", by_bit);
         a("transitions", transitions);
     }
 
-    /// symbols + nonfinite + Σ excluded: every symbol that was ever handed in.
+    /// symbols + nonfinite + live + decoded + Σ excluded: every symbol that was ever handed in.
     std::uint64_t accounted() const;
     /// Σh²/Σh, how bit errors clump within symbols; 1 with no errors.
     double bit_dispersion() const;

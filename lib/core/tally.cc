@@ -40,6 +40,8 @@ void tally::merge(const tally& later)
     bit_errors += later.bit_errors;
     bit_errors_squared += later.bit_errors_squared;
     nonfinite += later.nonfinite;
+    live += later.live;
+    decoded += later.decoded;
     for (std::size_t k = 0; k < excluded.size(); ++k)
         excluded[k] += later.excluded[k];
     for (std::size_t k = 0; k < sent.size(); ++k)
@@ -51,7 +53,7 @@ void tally::merge(const tally& later)
 
 std::uint64_t tally::accounted() const
 {
-    return std::accumulate(excluded.begin(), excluded.end(), symbols + nonfinite);
+    return std::accumulate(excluded.begin(), excluded.end(), symbols + nonfinite + live + decoded);
 }
 
 double tally::bit_dispersion() const

@@ -3,25 +3,12 @@
 #include "halfplane/link/bit_tally.h"
 
 #include "halfplane/link/sha256.h"
+#include "refuse.h"
 #include "report_parts.h"
 
 #include <cmath>
-#include <sstream>
-#include <stdexcept>
 
 namespace halfplane::link {
-
-namespace {
-
-template <typename... Parts>
-[[noreturn]] void refuse(const Parts&... parts)
-{
-    std::ostringstream text;
-    (text << ... << parts);
-    throw std::invalid_argument(text.str());
-}
-
-} // namespace
 
 bit_tally::bit_tally(bit_tally_options options) : d_options(std::move(options))
 {

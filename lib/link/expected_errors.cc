@@ -9,15 +9,20 @@ std::array<const rung*, 4> in_order(const rates& r)
     return {&r.exact, &r.facing, &r.union_bound, &r.nearest};
 }
 
-void expected_errors::add(const predictor& p, const rates& at_es_n0, double es_n0, const tally& counts)
+void expected_errors::add(const rates& at_es_n0, std::uint64_t count)
 {
     const auto rungs_in_order = in_order(at_es_n0);
-    const auto n = static_cast<long double>(counts.symbols);
+    const auto n = static_cast<long double>(count);
     for (std::size_t k = 0; k < rungs; ++k) {
         symbol[k] += n * rungs_in_order[k]->ser;
         bit[k] += n * rungs_in_order[k]->ber;
     }
-    symbols += counts.symbols;
+    symbols += count;
+}
+
+void expected_errors::add(const predictor& p, const rates& at_es_n0, double es_n0, const tally& counts)
+{
+    add(at_es_n0, counts.symbols);
     const std::size_t m = counts.sent.size();
     for (std::size_t i = 0; i < m && !transitions.empty(); ++i) {
         if (counts.sent[i] == 0)

@@ -31,6 +31,8 @@ struct expected_errors {
         a("transitions", transitions);
     }
 
+    /// `n` symbols at these rates, no transitions.
+    void add(const rates& at_es_n0, std::uint64_t n);
     void add(const predictor& p, const rates& at_es_n0, double es_n0, const tally& counts);
 };
 

@@ -135,6 +135,10 @@ report account_of(const tally& counts, std::uint64_t pending)
     report out;
     out["in"] = counts.accounted() + pending;
     out["judged"] = counts.symbols;
+    if (counts.decoded > 0)
+        out["decoded"] = counts.decoded;
+    if (counts.live > 0)
+        out["live"] = counts.live;
     out["pending"] = pending;
     out["nonfinite"] = counts.nonfinite;
     out["excluded"] = {{"before_lock", counts.excluded[0]},
@@ -230,6 +234,18 @@ report shortfall_of(const shortfall& s)
     return out;
 }
 
+void put_gauge(report& out, const signal_set& set, const gauged& fit)
+{
+    const double g2 = std::norm(fit.gain), o2 = std::norm(fit.offset);
+    out["es_n0_db"] = to_db(fit.es_n0);
+    out["es_n0_db_se"] = fit.es_n0_db_se;
+    out["eb_n0_db"] = to_db(fit.es_n0 / set.entropy_bits());
+    out["gain_db"] = to_db(g2);
+    out["phase_deg"] = std::arg(fit.gain) * degrees;
+    if (o2 > 0) // relative to the received Es
+        out["offset_db"] = to_db(o2 / (g2 * set.es()));
+}
+
 report counts_and_gauge(const signal_set& set,
                         const tally& counts,
                         const std::optional<gauge_result>& fit,
@@ -252,14 +268,7 @@ report counts_and_gauge(const signal_set& set,
     }
     if (!fit)
         return out;
-    const double g2 = std::norm(fit->gain), o2 = std::norm(fit->offset);
-    out["es_n0_db"] = to_db(fit->es_n0);
-    out["es_n0_db_se"] = fit->es_n0_db_se;
-    out["eb_n0_db"] = to_db(fit->es_n0 / set.entropy_bits());
-    out["gain_db"] = to_db(g2);
-    out["phase_deg"] = std::arg(fit->gain) * degrees;
-    if (o2 > 0) // relative to the received Es
-        out["offset_db"] = to_db(o2 / (g2 * set.es()));
+    put_gauge(out, set, {fit->gain, fit->offset, fit->es_n0, fit->es_n0_db_se});
     out["evm_rms"] = fit->evm_rms;
     out["mer_db"] = fit->mer_db;
     return out;
@@ -277,9 +286,11 @@ report frames_of(const trial_state& now, const frame_counts& before, const run_i
     if (frames > 0)
         put_interval(
             out, "fer", static_cast<double>(errors) / static_cast<double>(frames), ends.fer(errors, frames));
-    static constexpr const char* causes[] = {"before_lock", "slip", "signal_lost", "overflow", "nonfinite"};
+    static constexpr const char* causes[] = {
+        "before_lock", "slip", "signal_lost", "overflow", "nonfinite", "live"};
     for (std::size_t k = 0; k < frame_counts::causes; ++k)
-        out["frames_excluded"][causes[k]] = now.frames.excluded[k] - before.excluded[k];
+        if (k != trial::live || now.frames.excluded[k] > 0) // most links have none
+            out["frames_excluded"][causes[k]] = now.frames.excluded[k] - before.excluded[k];
     return out;
 }
 
@@ -307,8 +318,9 @@ report verdict_of(const trial_state& trial, const tally& counts)
 {
     const auto before_lock = static_cast<std::size_t>(-1 - code(exclusion::before_lock));
     const auto excluded = trial.target->kind == error_kind::fer
-                              ? trial.frames.all_excluded()
-                              : counts.accounted() - counts.symbols - counts.excluded[before_lock];
+                              ? trial.frames.all_excluded() - trial.frames.excluded[link::trial::live]
+                              : counts.accounted() - counts.symbols - counts.excluded[before_lock] -
+                                    counts.live - counts.decoded;
     return verdict_of(*trial.target, *trial.bets, excluded, trial.frames.length());
 }
 

@@ -36,6 +36,12 @@ report counts_and_gauge(const signal_set& set,
                         const tally& counts,
                         const std::optional<gauge_result>& fit,
                         const run_intervals& ends);
+/// What least squares and the blind gauge have in common.
+struct gauged {
+    complex gain, offset;
+    double es_n0, es_n0_db_se;
+};
+void put_gauge(report& out, const signal_set& set, const gauged& fit);
 report rates_of(const rates& r);
 report rates_of(const expected_errors& e);
 report account_of(const tally& counts, std::uint64_t pending);
@@ -59,8 +65,8 @@ report verdict_of(const error_target& target,
                   std::uint64_t excluded,
                   std::uint64_t frame_length);
 void put_interval(report& out, const std::string& name, double rate, const interval& ends);
-/// \param counts of the run. Symbols before the lock are no excluded ones here: nothing was claimed of them
-/// yet.
+/// \param counts of the run. Symbols before the lock are no excluded ones here, nor such as were never known
+/// in advance: nothing was claimed of them.
 report verdict_of(const trial_state& trial, const tally& counts);
 
 } // namespace halfplane::link

@@ -11,46 +11,10 @@ namespace halfplane::link {
 watch::reporting::reporting(const signal_set& set, watch_options options)
     : d_counts(set), d_set(set), d_options(std::move(options)),
       d_predictor(set, std::make_shared<awgn>(), d_options.rule), d_curve(d_predictor),
-      d_digest(sha256(settings().dump())), d_waiting_counts(set)
+      d_digest(sha256(settings().dump())), d_prediction(set, set.size() <= most_points_for_transitions),
+      d_decoded_counts(set), d_decoded_prediction(set, false), d_live(set)
 {
     d_run.trial = trial(set, d_options.trial, d_options.confidence).state();
-    if (set.size() <= most_points_for_transitions)
-        d_expected.transitions.assign(set.size() * set.size(), 0);
-}
-
-const rates& watch::reporting::rates_at(double es_n0) const
-{
-    if (!d_last_rates || d_last_rates->first != es_n0)
-        d_last_rates.emplace(es_n0, d_predictor.at(es_n0));
-    return d_last_rates->second;
-}
-
-void watch::reporting::add_prediction(const window& w)
-{
-    d_waiting_counts.merge(w.counts);
-    d_waiting_fit.merge(w.fit);
-    if (!w.fit.solve(d_set))
-        return;
-    if (const auto fit = d_waiting_fit.solve(d_set)) {
-        d_expected.add(d_predictor, rates_at(fit->es_n0), fit->es_n0, d_waiting_counts);
-        d_waiting_counts = tally(d_set);
-        d_waiting_fit = {};
-    }
-}
-
-/// Over all judged symbols; what still waits is predicted at the gauge of the run, for this report alone.
-std::optional<expected_errors> watch::reporting::prediction_of_run() const
-{
-    auto all = d_expected;
-    if (d_waiting_counts.symbols > 0) {
-        const auto fit = d_fit.solve(d_set);
-        if (!fit)
-            return std::nullopt;
-        all.add(d_predictor, rates_at(fit->es_n0), fit->es_n0, d_waiting_counts);
-    }
-    if (all.symbols == 0)
-        return std::nullopt;
-    return all;
 }
 
 namespace {
@@ -137,7 +101,7 @@ report watch::reporting::total(const window& w,
         out["frame_dispersion"] = *d;
     if (d_counts.bit_errors > 0)
         out["bit_dispersion"] = d_counts.bit_dispersion();
-    const auto expected = prediction_of_run();
+    const auto expected = d_prediction.of_run(d_rates, d_set, d_fit);
     if (expected)
         out["predicted"] = rates_of(*expected);
     out["by_bit"] = d_counts.by_bit;
@@ -148,6 +112,14 @@ report watch::reporting::total(const window& w,
                                         unlisted);
     if (unlisted > 0)
         out["transitions_unlisted"] = unlisted;
+    if (d_decoded_counts.symbols > 0) {
+        out["decoded_part"] =
+            counts_and_gauge(d_set, d_decoded_counts, d_decoded_fit.solve(d_set), unbunched());
+        if (const auto of_decoded = d_decoded_prediction.of_run(d_rates, d_set, d_decoded_fit))
+            out["decoded_part"]["predicted"] = rates_of(*of_decoded);
+    }
+    if (auto of_live = d_live.of_run(d_rates, d_counts.live); !of_live.empty())
+        out["live_part"] = std::move(of_live);
     return out;
 }
 
@@ -170,6 +142,26 @@ loss_question watch::reporting::asked(const std::optional<shortfall>& at_the_inp
     return question;
 }
 
+report watch::reporting::window_part(const window& w, const run_intervals& ends)
+{
+    const auto fit = w.fit.solve(d_set);
+    report out = {{"first_symbol", w.first_symbol}};
+    out.update(counts_and_gauge(d_set, w.counts, fit, ends));
+    out.update(frames_of(w.trial, d_frames, ends));
+    d_frames = w.trial.frames;
+    if (fit)
+        out["predicted"] = rates_of(d_rates.at(fit->es_n0));
+    if (w.decoded) {
+        const auto decoded_fit = w.decoded_fit.solve(d_set);
+        out["decoded_part"] = counts_and_gauge(d_set, *w.decoded, decoded_fit, unbunched());
+        if (decoded_fit)
+            out["decoded_part"]["predicted"] = rates_of(d_rates.at(decoded_fit->es_n0));
+    }
+    if (!d_live.of_window().empty())
+        out["live_part"] = d_live.of_window();
+    return out;
+}
+
 report watch::reporting::report_of(window&& w, bool final)
 {
     d_counts.merge(w.counts);
@@ -180,7 +172,13 @@ report watch::reporting::report_of(window&& w, bool final)
         d_lock = w.lock;
     if (w.input)
         d_input = w.input;
-    add_prediction(w);
+    d_prediction.add(d_rates, d_set, w.counts, w.fit);
+    if (w.decoded) {
+        d_decoded_counts.merge(*w.decoded);
+        d_decoded_fit.merge(w.decoded_fit);
+        d_decoded_prediction.add(d_rates, d_set, *w.decoded, w.decoded_fit);
+    }
+    d_live.add(d_rates, w.live, w.fit.solve(d_set));
     add_stretch(w);
     add_input(w);
     const run_intervals ends{w.blocks.dispersion().value_or(1),
@@ -205,14 +203,7 @@ report watch::reporting::report_of(window&& w, bool final)
     out["decisions"] = d_options.receiver_decisions ? "receiver" : "own";
     out["confidence"] = d_options.confidence;
 
-    const auto fit = w.fit.solve(d_set);
-    report window_part = {{"first_symbol", w.first_symbol}};
-    window_part.update(counts_and_gauge(d_set, w.counts, fit, ends));
-    window_part.update(frames_of(w.trial, d_frames, ends));
-    d_frames = w.trial.frames;
-    if (fit)
-        window_part["predicted"] = rates_of(rates_at(fit->es_n0));
-    out["window"] = std::move(window_part);
+    out["window"] = window_part(w, ends);
     out["total"] = total(w, d_fit.solve(d_set), ends);
 
     if (d_input)

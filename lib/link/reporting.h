@@ -2,13 +2,14 @@
 // reporting: the other half of watch: totals of the run, predictions, and the report they make.
 #pragma once
 
-#include "expected_errors.h"
 #include "explanation.h"
 #include "halfplane/carry.h"
 #include "halfplane/link/watch.h"
 #include "halfplane/ser_curve.h"
 #include "halfplane/shortfall.h"
+#include "live_part.h"
 #include "report_parts.h"
+#include "running_prediction.h"
 
 namespace halfplane::link {
 
@@ -30,9 +31,11 @@ struct watch::reporting {
         a("sequence", d_sequence);
         a("counts", d_counts);
         a("fit", d_fit);
-        a("expected", d_expected);
-        a("waiting_counts", d_waiting_counts);
-        a("waiting_fit", d_waiting_fit);
+        a("prediction", d_prediction);
+        a("decoded_counts", d_decoded_counts);
+        a("decoded_fit", d_decoded_fit);
+        a("decoded_prediction", d_decoded_prediction);
+        a("live", d_live);
         a("at_decision", d_at_decision);
         a("last_stretch", d_last_stretch);
         a("open_stretch", d_open_stretch);
@@ -71,13 +74,12 @@ struct watch::reporting {
 
 private:
     std::uint64_t slips() const { return d_slips_before + (d_lock ? d_lock->slips : 0); }
-    /// The rungs at this Es/N0; the last answer is kept, as window and run mostly ask for the same.
-    const rates& rates_at(double es_n0) const;
-    void add_prediction(const window& w);
     void add_stretch(const window& w);
     void add_input(const window& w);
-    std::optional<expected_errors> prediction_of_run() const;
 
+    /// Bunching of errors is measured among judged symbols alone.
+    run_intervals unbunched() const { return {1, d_options.confidence}; }
+    report window_part(const window& w, const run_intervals& ends);
     report total(const window& w, const std::optional<gauge_result>& fit, const run_intervals& ends) const;
     loss_question asked(const std::optional<shortfall>& at_the_input) const;
     std::optional<shortfall> at_decision(const run_intervals& ends) const;
@@ -88,7 +90,7 @@ private:
     const predictor d_predictor;
     const ser_curve d_curve;
     const std::string d_digest;
-    mutable std::optional<std::pair<double, rates>> d_last_rates;
+    const rate_memory d_rates{d_predictor};
 
     // The run so far.
     std::uint64_t d_sequence = 0, d_slips_before = 0; // slips of earlier runs
@@ -97,10 +99,13 @@ private:
     std::optional<lock_status> d_lock;
     std::optional<input_snr> d_input;
 
-    // Predictions: windows that cannot be gauged wait for one that can.
-    expected_errors d_expected;
-    tally d_waiting_counts;
-    gauge d_waiting_fit;
+    running_prediction d_prediction;
+
+    // Symbols known only by decoding, and those that nobody knows.
+    tally d_decoded_counts;
+    gauge d_decoded_fit;
+    running_prediction d_decoded_prediction;
+    live_part d_live;
 
     // Shortfall at the decision: full stretches but the last, the last full one, and what followed it.
     snr_record d_at_decision;

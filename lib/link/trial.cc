@@ -104,11 +104,11 @@ void trial::judged(const std::uint16_t* sent, const std::uint16_t* decided, std:
     }
 }
 
-void trial::left_out(std::size_t cause)
+void trial::left_out(std::size_t cause, std::uint64_t n)
 {
     if (!d_idle)
         d.frames.leave_out(
-            1, cause, [this](std::uint64_t count, bool in_error) { take_frames(count, in_error); });
+            n, cause, [this](std::uint64_t count, bool in_error) { take_frames(count, in_error); });
 }
 
 } // namespace halfplane::link

@@ -152,6 +152,30 @@ TEST_F(Resume, TotalsEqualThoseOfARunThatWasNotInterrupted)
     }
 }
 
+/// Live traffic, and symbols known only by decoding: the samples that wait for their gauge are carried too.
+TEST_F(Resume, LiveTrafficIsGaugedAsIfNothingHadBeen)
+{
+    const auto set = named_set("qam:16");
+    auto s = simulate(set, 20 * window, 14, 8);
+    for (std::size_t k = 0; k < s.reference.size(); ++k)
+        if (k % 500 >= 450)
+            s.reference[k] |= decoded_flag;
+        else if (k % 500 >= 50)
+            s.reference[k] = live_code;
+    auto options = options_of();
+    options.trial.frame_symbols = 0;
+    auto whole = run(set, s, options, 0, s.samples.size());
+    const auto log = path("live.jsonl");
+    options.resume = log;
+    run(set, s, options, 0, 7 * window, log);
+    auto resumed = run(set, s, options, 7 * window, s.samples.size(), log);
+    drop_what_is_drawn(whole);
+    drop_what_is_drawn(resumed);
+    expect_same(whole, resumed);
+    EXPECT_EQ(resumed["total"]["live_part"]["symbols"], 16 * window);
+    EXPECT_EQ(resumed["total"]["decoded_part"]["symbols"], 2 * window);
+}
+
 TEST_F(Resume, FramesGoOnExceptTheOneUnderWay)
 {
     const auto set = named_set("psk:4");

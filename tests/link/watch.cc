@@ -321,11 +321,11 @@ TEST(Watch, RefusesWhatItCannotUse)
     const auto ignore = [](watch::window&&) {};
     s.reference[2500] = 4;
     EXPECT_EQ(refusal([&] { measured.add(s.samples.data(), s.reference.data(), nullptr, 3000, ignore); }),
-              "reference 2500 is 4: neither an index of 4 points nor an exclusion");
+              "reference 2500 is 4: neither an index of 4 points nor an exclusion, nor live traffic");
     EXPECT_EQ(measured.handed_in(), 2048u) << "what came before stands";
-    s.reference[0] = -5;
+    s.reference[0] = -6;
     EXPECT_EQ(refusal([&] { measured.add(s.samples.data(), s.reference.data(), nullptr, 1, ignore); }),
-              "reference 2048 is -5: neither an index of 4 points nor an exclusion");
+              "reference 2048 is -6: neither an index of 4 points nor an exclusion, nor live traffic");
     const std::uint16_t decided = 4;
     EXPECT_EQ(refusal([&] { measured.add(&s.samples[1], &s.reference[1], &decided, 1, ignore); }),
               "decisions were handed in, but `receiver_decisions` is off");

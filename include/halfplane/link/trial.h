@@ -43,21 +43,21 @@ struct trial_state {
 
 /*!
  * A step of the bets is a symbol; of a target on frames a judged frame. Symbols that are left out are no
- * steps. The causes of excluded frames are those of the symbols, in the order of `exclusion`, and nonfinite
- * last.
+ * steps. The causes of excluded frames are those of the symbols, in the order of `exclusion`, nonfinite,
+ * and last those that hold symbols not known in advance.
  */
 class trial
 {
 public:
-    static constexpr std::size_t nonfinite = exclusion_count;
+    static constexpr std::size_t nonfinite = exclusion_count, live = exclusion_count + 1;
 
     /// \throws std::invalid_argument naming the option and its value
     trial(const signal_set& set, const trial_options& options, double confidence);
 
     /// `n` judged symbols in order, as indices.
     void judged(const std::uint16_t* sent, const std::uint16_t* decided, std::size_t n);
-    /// One symbol that is not judged.
-    void left_out(std::size_t cause);
+    /// `n` symbols that are not judged.
+    void left_out(std::size_t cause, std::uint64_t n = 1);
     const trial_state& state() const noexcept { return d; }
     /// From where another run stood.
     void go_on(trial_state from) { d = std::move(from); }

@@ -2,6 +2,7 @@
 // watch: tallies, gauges and predicts over the same symbols, and writes the report.
 #pragma once
 
+#include "halfplane/blind_gauge.h"
 #include "halfplane/block_counts.h"
 #include "halfplane/gauge.h"
 #include "halfplane/link/aligner.h"
@@ -70,8 +71,11 @@ public:
         std::uint64_t first_symbol = 0; ///< place in the stream handed in, from 0
         tally counts;
         halfplane::gauge fit;
-        residual_sums residuals; ///< empty unless `explain`
-        block_counts blocks;     ///< of the run up to the window's end
+        residual_sums residuals;      ///< empty unless `explain`
+        std::optional<tally> decoded; ///< symbols known only by decoding, and the gauge of these
+        halfplane::gauge decoded_fit;
+        thinned_samples live; ///< of the symbols nobody knows
+        block_counts blocks;  ///< of the run up to the window's end
         second_counts
             seconds;       ///< of the run up to the window's end, complete ones; none without a symbol rate
         trial_state trial; ///< of the run up to the window's end
@@ -96,7 +100,9 @@ public:
     watch(watch&&) noexcept;
 
     /*!
-     * Samples and references of equal length, and decisions with `receiver_decisions` (else null). Calls
+     * Samples and references (symbol_code.h) of equal length, and decisions with `receiver_decisions` (else
+     * null). Symbols known in advance are judged. Those known only by decoding have a tally and a gauge of
+     * their own, since the frames that failed are missing among them; live traffic is gauged blindly. Calls
      * on_window for each window that closes. \throws std::invalid_argument where a reference or a decision is
      * no index of the set and no exclusion code: names place and value; the whole 1,024 symbols about it are
      * left uncounted
