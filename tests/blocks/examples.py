@@ -79,7 +79,30 @@ def recording(report):
     assert total["ser_high"] < 0.02
 
 
-TASKS = {"a_simulated_link": simulated_link, "b_own_set": own_set, "c_soft_bits": soft_bits, "d_recording": recording}
+def live_traffic(report):
+    """1,000 frames of 64 known symbols and 137 others; the first is cut short. Limits at four standard deviations."""
+    total = report["total"]
+    decoded, live = total["decoded_part"], total["live_part"]
+    assert total["in"] == 1000 * 201 - 77 == total["judged"] + total["decoded"] + total["live"]
+    assert total["judged"] == total["symbols"] == 999 * 64 and total["pending"] == 0
+    exact = halfplane.predictor(halfplane.load_set("apsk:4+8:2.3")).ser(14.5)
+    assert abs(total["ser"] - exact) < 4 * np.sqrt(exact / total["judged"])
+    assert abs(total["es_n0_db"] - 14.5) < 4 * total["es_n0_db_se"]
+    # Without a code a frame passes if none of its 137 symbols errs; CRC-32 lets one in 2^32 through.
+    passed, pass_rate = total["decoded"] // 137, (1 - exact) ** 137
+    assert total["decoded"] == 137 * passed and abs(passed - 999 * pass_rate) < 4 * np.sqrt(999 * pass_rate * (1 - pass_rate))
+    # So decoded symbols flatter, twice over: no error among them, and less noise than there is.
+    assert decoded["symbols"] == total["decoded"] and decoded["symbol_errors"] == 0
+    assert decoded["es_n0_db"] > 14.5 + 4 * decoded["es_n0_db_se"]
+    # What they have too little, the others have too much: no more than the shares say.
+    assert live["symbols"] == total["live"]
+    excess = (decoded["es_n0_db"] - 14.5) * total["decoded"] / total["live"]
+    assert -excess < live["es_n0_db"] - 14.5 + 4 * live["es_n0_db_se"] and live["es_n0_db"] < 14.5 + 4 * live["es_n0_db_se"]
+    assert abs(report["shortfall"]["input"]["db"]) < 0.2
+
+
+TASKS = {"a_simulated_link": simulated_link, "b_own_set": own_set, "c_soft_bits": soft_bits, "d_recording": recording,
+         "e_live_traffic_known_frames": live_traffic}
 RADIOS = ["f_over_the_air_uhd", "g_over_the_air_soapy"]
 
 
@@ -92,6 +115,19 @@ def test_every_flowgraph_stands_twice_and_is_tested():
 @pytest.mark.parametrize("run, suffix", [(run_grc, ".grc"), (run_py, ".py")], ids=["grc", "py"])
 def test_says_what_it_must(name, run, suffix, tmp_path):
     TASKS[name](run(FLOWGRAPHS / (name + suffix), tmp_path))
+
+
+def test_live_traffic_is_the_same_code_in_both():
+    """What the .grc carries in its Python blocks stands word for word in the .py."""
+    flow = yaml.safe_load((FLOWGRAPHS / "e_live_traffic_known_frames.grc").read_text())
+    text = (FLOWGRAPHS / "e_live_traffic_known_frames.py").read_text()
+    codes = [block["parameters"][key] for block in flow["blocks"] for key in ("source_code", "_source_code") if key in block["parameters"]]
+    assert len(codes) == 2
+    for code in codes:
+        parts = [part for part in code.split("\n\n\n") if part.startswith(("def ", "class "))]
+        assert parts
+        for part in parts:
+            assert part.rstrip() in text
 
 
 def over_the_air(report):

@@ -28,6 +28,10 @@ namespace gr::halfplane {
  * - as PDUs on message port `known`: metadata {first_symbol: place in the input from 0, decoded: bool, false
  *   where missing}, data: the indices. May come before, while and after its symbols pass.
  *
+ * Samples and messages travel on different ways. Where the samples pass the block that finds the frames, it
+ * has spoken of a symbol before that arrives, and a hold-back of a frame and one buffer between two blocks
+ * (8192 symbols) loses none; where they run beside it, add what the buffers of its branch hold.
+ *
  * Decoded means: of a frame whose check held, encoded anew. Frames that failed are missing among these, so
  * they flatter; what a span known in advance says of a symbol outranks it. Where a span contradicts an
  * earlier one, it is left out whole and counted. A tag or a message that is not understood is logged with its
