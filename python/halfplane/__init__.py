@@ -19,6 +19,7 @@ _BLOCKS = (
     "aligner",
     "json_to_pmt",
     "error_tally",
+    "input_gauge",
     "known_spans",
     "link_log",
     "link_watch",

@@ -11,6 +11,7 @@ PYBIND11_MODULE(blocks_python, m)
     py::module::import("gnuradio.gr");
     py::module::import("gnuradio.halfplane.core_python");
     bind_aligner(m);
+    bind_input_gauge(m);
     bind_known_spans(m);
     bind_link_log(m);
     bind_link_watch(m);

@@ -6,6 +6,7 @@
 
 void bind_aligner(pybind11::module& m);
 void bind_error_tally(pybind11::module& m);
+void bind_input_gauge(pybind11::module& m);
 void bind_known_spans(pybind11::module& m);
 void bind_link_log(pybind11::module& m);
 void bind_link_watch(pybind11::module& m);
