@@ -121,7 +121,7 @@ TEST(noise, the_rare_fine_bits_reach_the_far_tail)
 
 TEST(noise, moments_and_tails)
 {
-    constexpr std::size_t count = 40'000'000, step = 100'000;
+    constexpr std::size_t count = 400'000'000, step = 100'000;
     const complex_noise noise(20240607, 3);
     std::vector<sample> z(step);
     std::array<std::uint64_t, 3> beyond{};
