@@ -4,6 +4,7 @@
 #include "halfplane/set_file.h"
 
 #include <gnuradio/halfplane/aligner.h>
+#include <gnuradio/halfplane/known_spans.h>
 #include <gnuradio/halfplane/link_watch.h>
 #include <gnuradio/halfplane/llr_detector.h>
 #include <gnuradio/halfplane/noise_at.h>
@@ -79,4 +80,51 @@ TEST(Threads, SettersWhileRunning)
         accounted += cause.get<std::uint64_t>();
     EXPECT_EQ(total.at("in"), accounted);
     EXPECT_EQ(total.at("in").get<std::uint64_t>() - aligner::holdback(), watch->nitems_read(0));
+}
+
+TEST(Threads, SpansHandedInWhileRunning)
+{
+    const auto set = halfplane::load_set("qam:16");
+    const auto graph = gr::make_top_block("spans");
+    const auto source = test_pattern::make(set, "draw:1");
+    const auto map = point_mapper::make(set);
+    const auto noise = noise_at::make(set, 15.0, 1.0, 1);
+    const auto spans = known_spans::make(set, 4096);
+    const auto watch = link_watch::make(set, "draw:1", 1000);
+    graph->connect(source, 0, map, 0);
+    graph->connect(map, 0, noise, 0);
+    graph->connect(noise, 0, spans, 0);
+    graph->connect(spans, 0, watch, 0);
+    graph->connect(spans, 1, watch, 1);
+
+    const auto data = pmt::make_u8vector(50, 7);
+    const auto hand_in = [&](std::uint64_t first_symbol, bool decoded) {
+        auto meta = pmt::dict_add(pmt::make_dict(), pmt::mp("first_symbol"), pmt::from_uint64(first_symbol));
+        meta = pmt::dict_add(meta, pmt::mp("decoded"), pmt::from_bool(decoded));
+        spans->_post(pmt::mp("known"), pmt::cons(meta, data));
+    };
+    hand_in(0, false); // before the start, so never late
+    std::uint64_t handed = 1;
+    graph->start();
+    for (auto counts = spans->counts(); counts.spans < 2000 || counts.known == 0 || watch->report().empty();
+         counts = spans->counts()) {
+        if (handed < 2000)
+            hand_in(counts.live + 20000 + 100 * (handed % 100), handed % 2);
+        handed += handed < 2000;
+        std::this_thread::yield();
+    }
+    graph->stop();
+    graph->wait();
+
+    const auto counts = spans->counts();
+    const auto total = nlohmann::json::parse(watch->report()).at("total");
+    EXPECT_EQ(counts.spans, handed);
+    EXPECT_EQ(counts.conflicts, 0u); // all say the same
+    EXPECT_EQ(spans->refused(), 0u);
+    EXPECT_GE(counts.known, 50u);
+    EXPECT_EQ(counts.known + counts.decoded + counts.live, spans->nitems_written(0));
+    EXPECT_LE(watch->nitems_read(0), spans->nitems_written(0));
+    EXPECT_EQ(total.at("judged").get<std::uint64_t>() + total.value("decoded", std::uint64_t{0}) +
+                  total.at("live").get<std::uint64_t>(),
+              watch->nitems_read(0));
 }
