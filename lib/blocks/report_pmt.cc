@@ -96,7 +96,7 @@ json dict_to_json(const pmt::pmt_t& dict)
         const pmt::pmt_t key = pmt::car(pmt::car(items)), value = pmt::cdr(pmt::car(items));
         if (!pmt::is_symbol(key))
             throw std::invalid_argument("pmt_to_json: a key is " + pmt::write_string(key) + ", not a symbol");
-        if (pmt::is_u8vector(value))
+        if (pmt::is_u8vector(value) || pmt::is_c32vector(value))
             continue;
         object[pmt::symbol_to_string(key)] = pmt_to_json(value);
     }

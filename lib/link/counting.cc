@@ -72,6 +72,7 @@ void watch::counting::take(const std::complex<float>* in,
     }
     if (residuals)
         explain(in, reference, n);
+    open.recent.add(in, reference, n);
 }
 
 void watch::counting::check_references(const reference_t* reference, std::size_t n) const

@@ -31,6 +31,7 @@ void watch::window::merge(window&& later)
     counts.merge(later.counts);
     fit.merge(later.fit);
     residuals.merge(later.residuals);
+    recent.merge(later.recent);
     if (!decoded)
         decoded = std::move(later.decoded);
     else if (later.decoded)

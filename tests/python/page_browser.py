@@ -150,10 +150,10 @@ def test_all_is_reached_by_the_keyboard(browser, server):
     look(browser, (1024, 768), "light")
     open_page(browser, server)
     reached = []
-    for _ in range(14):
+    for _ in range(16):
         browser.switch_to.active_element.send_keys(Keys.TAB)
         reached.append(browser.execute_script("const at = document.activeElement; return at.id || at.getAttribute('aria-label') || at.className"))
-    assert reached[:4] == ["skip", "pause", "theme", "report"]
+    assert reached[:4] == ["skip", "pause", "theme", "report"] and {"show-labels", "show-samples"} <= set(reached)
     assert sum(str(each).startswith("Enlarge") for each in reached) == 6
     browser.find_element("css selector", "#curve button").send_keys(Keys.ENTER)
     before = browser.execute_script("return document.querySelector('#losses svg').getBoundingClientRect().width")
@@ -161,6 +161,30 @@ def test_all_is_reached_by_the_keyboard(browser, server):
     assert browser.execute_script("return document.querySelector('#curve').getBoundingClientRect().width") > 1.8 * before
     named = browser.execute_script("return [...document.querySelectorAll('figure svg')].map((each) => [each.getAttribute('role'), each.querySelector('title').textContent, each.querySelector('desc').textContent])")
     assert all(role == "img" and title and text for role, title, text in named)
+
+
+def seen(browser, layer):
+    """How many elements of a layer take room on the screen."""
+    return browser.execute_script(f"return [...document.querySelectorAll('#decision_map .hp-{layer}')].filter((each) => each.getClientRects().length).length")
+
+
+def test_labels_and_samples_by_the_keyboard(browser, server):
+    """Shown and hidden at once, even where the page is held still; no script or style of a drawing has a part in it."""
+    server.publish({**FULL, "sequence": 1, "cloud": [0.25 + 0.5j, -0.125 + 0j]})
+    look(browser, (1024, 768), "light")
+    open_page(browser, server)
+    wait_for(browser, "document.querySelector('#decision_map .hp-samples')")
+    assert seen(browser, "labels") == 0 and seen(browser, "samples") == 1
+    browser.find_element("id", "pause").send_keys(Keys.ENTER)
+    browser.find_element("id", "show-labels").send_keys(Keys.ENTER)
+    browser.find_element("id", "show-samples").send_keys(Keys.SPACE)
+    assert seen(browser, "labels") == 2 * len(FULL["settings"]["labels"]) and seen(browser, "samples") == 0
+    pressed = [browser.find_element("id", f"show-{layer}").get_attribute("aria-pressed") for layer in ("labels", "samples")]
+    assert pressed == ["true", "false"]
+    open_page(browser, server)  # kept for the next visit
+    assert seen(browser, "labels") > 0 and seen(browser, "samples") == 0
+    browser.execute_script("localStorage.clear()")
+    assert browser.get_log("browser") == []
 
 
 def test_with_a_token_the_page_and_its_stream_work(browser):

@@ -176,7 +176,37 @@ def test_keys_zoom_move_and_lead_from_view_to_view(application, panel):
         at = at.nextInFocusChain()
         if at.focusPolicy() & QtCore.Qt.TabFocus:
             reached.add(at.objectName() or (at.text() if isinstance(at, QtWidgets.QPushButton) else ""))
-    assert {*NAMES, "&Colours", "&Picture", "&Report"} <= reached
+    assert {*NAMES, "&Colours", "&Picture", "&Report", "&Labels", "Sa&mples"} <= reached
+
+
+CLOUD = [0.25 + 0.5j, -0.125 + 0j, complex("nan"), 1e9]
+
+
+def test_labels_and_samples_by_key_and_by_button(application, panel):
+    """The map alone changes; what is off is not drawn."""
+    panel.publish({**FULL, "cloud": CLOUD})
+    panel.draw_all()
+
+    def shown():
+        found = panel.canvas("decision_map").drawing
+        dots = [item for item in found.items if isinstance(item, drawing.Cloud)]
+        return bool(set(SETTINGS["labels"]) & set(found.texts())), sum(len(each.points) for each in dots)
+
+    assert shown() == (False, 2)  # the two that lie in the frame
+    buttons = {each.text(): each for each in panel.findChildren(QtWidgets.QPushButton)}
+    QtTest.QTest.keyClick(buttons["&Labels"], QtCore.Qt.Key_Space)
+    assert shown() == (True, 2)
+    QtTest.QTest.mouseClick(buttons["Sa&mples"], QtCore.Qt.LeftButton)
+    assert shown() == (True, 0)
+    panel.activateWindow()
+    QtTest.QTest.qWaitForWindowActive(panel)
+    QtTest.QTest.keyClick(panel, QtCore.Qt.Key_L, QtCore.Qt.ControlModifier)
+    wait_for(application, lambda: shown() == (False, 0))
+    QtTest.QTest.keyClick(panel, QtCore.Qt.Key_M, QtCore.Qt.ControlModifier)
+    wait_for(application, lambda: shown() == (False, 2))
+    panel.publish({**FULL, "sequence": 1})  # a window without samples: the old ones are gone
+    panel.draw_all()
+    assert shown() == (False, 0) and "cloud" not in panel.board.latest()[0]
 
 
 def test_the_wheel_zooms_with_ctrl_only(panel):

@@ -6,6 +6,7 @@
 #include "halfplane/block_counts.h"
 #include "halfplane/gauge.h"
 #include "halfplane/link/aligner.h"
+#include "halfplane/link/recent_samples.h"
 #include "halfplane/link/trial.h"
 #include "halfplane/rates.h"
 #include "halfplane/residuals.h"
@@ -89,6 +90,7 @@ public:
         };
         std::vector<input_part> inputs;
         std::optional<input_snr> input; ///< last known
+        recent_samples recent;          ///< for pictures; no part of the report
         void merge(window&& later);
     };
     using window_handler = std::function<void(window&&)>;

@@ -9,6 +9,7 @@ from gnuradio import gr
 import pmt
 
 from .. import blocks_python
+from ..views.cloud import with_cloud
 from .guard import OWN_ADDRESS
 from .server import Server
 
@@ -58,6 +59,6 @@ class link_page(gr.basic_block):  # noqa: N801 (blocks are named as the host nam
 
     def _take(self, message) -> None:
         try:
-            self._server.publish(json.loads(blocks_python.pmt_to_json(message)))
+            self._server.publish(with_cloud(json.loads(blocks_python.pmt_to_json(message)), message))
         except Exception as error:  # an exception here would end this block's thread
             self.logger.error(f"a message on `report` is no report: {error}")

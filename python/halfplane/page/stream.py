@@ -129,7 +129,7 @@ class Studio:
 
     def _drawn(self, name: str, layout: str) -> bytes | None:
         try:
-            return event(name, views.render(self._board.draw(name, LAYOUTS[layout][name]), "page"))
+            return event(name, views.render(self._board.draw(name, LAYOUTS[layout][name], labels=True), "page"))
         except Exception:  # whatever a report may hold, the others are drawn
             if name not in self._failed:
                 self._failed.add(name)

@@ -10,6 +10,7 @@ from gnuradio import gr
 import pmt
 
 from .. import blocks_python
+from ..views.cloud import with_cloud
 from .widget import Panel
 
 
@@ -54,7 +55,7 @@ class link_panel(gr.basic_block, QtWidgets.QWidget):  # noqa: N801 (blocks are n
 
 
 def _as_report(message) -> dict:
-    return json.loads(blocks_python.pmt_to_json(message))
+    return with_cloud(json.loads(blocks_python.pmt_to_json(message)), message)
 
 
 def _lock_state(message) -> str:

@@ -54,6 +54,7 @@ class Panel(QtWidgets.QWidget):
         self._told = False  # a signal is under way
         self._unseen: set[str] = set()  # what was not drawn because nobody could see it
         self._columns = 0
+        self._layers: dict[str, QtWidgets.QPushButton] = {}  # of the decision map
         self._canvases = {name: Canvas(name, self._pace.charge, time.thread_time) for name in ("heading", *_HEIGHTS)}
         self._build()
         self._came.connect(self._note_news, QtCore.Qt.QueuedConnection)
@@ -127,6 +128,18 @@ class Panel(QtWidgets.QWidget):
             button.setToolTip({"&Colours": "Light or dark"}.get(text, f"Save a {text[1:].lower()}") + f" ({key})")
             button.clicked.connect(action)
             self._bar.addWidget(button)
+        self._map_bar = QtWidgets.QWidget()
+        row = QtWidgets.QHBoxLayout(self._map_bar)
+        row.setContentsMargins(0, 0, 0, 0)
+        row.addStretch(1)
+        for name, text, key, shown in (("labels", "&Labels", "Ctrl+L", False), ("samples", "Sa&mples", "Ctrl+M", True)):
+            button = self._layers[name] = QtWidgets.QPushButton(text)
+            button.setCheckable(True)
+            button.setChecked(shown)
+            button.setShortcut(key)
+            button.setToolTip(f"Decision map: {name} on or off ({key})")
+            button.toggled.connect(lambda *_: self._draw("decision_map"))
+            row.addWidget(button)
         self._grid = QtWidgets.QHBoxLayout()
         self._grid.setSpacing(_GAP)
         inside = QtWidgets.QWidget()
@@ -167,6 +180,11 @@ class Panel(QtWidgets.QWidget):
                 column.setSpacing(_GAP)
                 self._grid.addLayout(column, 1)
                 for name in names:
+                    if name == "decision_map":
+                        column.addWidget(self._map_bar)
+                        for button in self._layers.values():
+                            QtWidgets.QWidget.setTabOrder(before, button)
+                            before = button
                     column.addWidget(self._canvases[name])
                     QtWidgets.QWidget.setTabOrder(before, self._canvases[name])
                     before = self._canvases[name]
@@ -234,7 +252,8 @@ class Panel(QtWidgets.QWidget):
         width, height = self._width_of(name), float(_HEIGHTS.get(name, 92))
         if name == "decision_map":  # a plane: no higher than it is wide
             height = min(height, width + 60)
-        self._canvases[name].show_drawing(self.board.draw(name, (width, height)), self.theme)
+        shown = {layer: button.isChecked() for layer, button in self._layers.items()}
+        self._canvases[name].show_drawing(self.board.draw(name, (width, height), **shown), self.theme)
         if name == "heading":
             report = self.board.latest()[0]
             title = "  ".join(filter(None, (report.get("set", "Link"), report.get("pattern", ""))))
@@ -247,6 +266,7 @@ class Panel(QtWidgets.QWidget):
             f"QWidget#inside, QScrollArea {{ background: {shown['ground']}; }}"
             f"QLabel#title {{ color: {shown['ink']}; font-weight: 600; font-size: 16px; }}"
             f"QPushButton {{ font-size: 12px; color: {shown['ink']}; background: {shown['raised']}; border: 1px solid {shown['rule']}; border-radius: 4px; padding: 4px 11px; }}"
+            f"QPushButton:checked {{ color: {shown['ground']}; background: {shown['exact']}; }}"
             f"QPushButton:hover {{ border-color: {shown['quiet']}; }}"
             f"QPushButton:focus {{ border: 2px solid {shown['exact']}; padding: 3px 10px; }}"
             f"QGraphicsView {{ border: 1px solid {shown['rule']}; background: {shown['ground']}; }}"

@@ -133,12 +133,13 @@ class Mark:
 
 @dataclass(frozen=True)
 class Cloud:
-    """Many dots of one role."""
+    """Many dots of one role. layer, here and of Text: what a page may show and hide by itself (svg.py); "" for what is always shown."""
 
     points: tuple[tuple[float, float], ...]
     role: str = "quiet"
     size: float = 1.6
     strength: float = 0.35
+    layer: str = ""
 
 
 @dataclass(frozen=True)
@@ -154,6 +155,7 @@ class Text:
     bold: bool = False
     halo: bool = False
     note: str = ""
+    layer: str = ""
 
 
 Primitive = Line | Bar | Polygon | Arrow | Mark | Cloud | Text
