@@ -72,7 +72,7 @@ void watch::counting::take(const std::complex<float>* in,
     }
     if (residuals)
         explain(in, reference, n);
-    open.recent.add(in, reference, n);
+    recent.add(in, reference, n);
 }
 
 void watch::counting::check_references(const reference_t* reference, std::size_t n) const
@@ -133,13 +133,13 @@ void watch::counting::sort_out(const std::complex<float>* in,
     open.decoded_fit.add(d.samples.data(), d.sent.data(), d.decided.data(), d.n, set.points());
 }
 
-/// Why symbols err is asked of all whose points are known: decoding well hardly picks among residuals.
+/// Why symbols err is asked of those known in advance alone: that a frame decoded picks among its residuals.
 void watch::counting::explain(const std::complex<float>* in, const reference_t* reference, std::size_t n)
 {
-    std::array<reference_t, chunk> index;
+    std::array<reference_t, chunk> known;
     for (std::size_t k = 0; k < n; ++k)
-        index[k] = reference[k] < 0 ? reference[k] : static_cast<reference_t>(reference[k] & ~decoded_flag);
-    residuals->add(in, index.data(), n);
+        known[k] = reference[k] < decoded_flag ? reference[k] : live_code;
+    residuals->add(in, known.data(), n);
 }
 
 /// A MAP decider for this N0, unless the present one is within 2 % of it: the decisions change by less than
@@ -166,6 +166,8 @@ void watch::counting::close(const window_handler& on_window)
         if (const auto fit = open.fit.solve(set))
             follow_noise(fit->n0);
     open.map_n0 = map_n0;
+    open.recent = recent.kept();
+    recent = {};
     window done(set);
     std::swap(done, open);
     open.first_symbol = handed;

@@ -139,8 +139,20 @@ TEST(Live, WhatOnlyDecodedFramesShowNeverReachesTheHeadline)
     EXPECT_EQ(total["decoded_part"]["symbol_errors"], 0u);
     EXPECT_GT(total["decoded"].get<int>(), 40000);
     EXPECT_NE(report["verdict"]["state"], "pass"); // as it would with the decoded ones
+    EXPECT_FALSE(report.contains(
+        "premises")); // preambles alone are too short to explain, decoded frames no fair sample
     // Nor are they, or live symbols, ones that were left out.
     EXPECT_EQ(report["verdict"]["excluded_share"], 0.0);
+}
+
+/// Of frames that decoded well the residuals are smaller than noise has them: they explain nothing.
+TEST(Live, DecodedSymbolsAreNotAskedWhyOthersErr)
+{
+    const auto set = named_set("qam:16");
+    watch of_decoded(set, {}), of_known(set, {});
+    const auto s = simulate(set, 100000, 16, 3);
+    EXPECT_FALSE(last_report(of_decoded, with_frames(s, 600, 64, 536)).contains("explained_symbols"));
+    EXPECT_GT(last_report(of_known, s)["explained_symbols"].get<int>(), 5000);
 }
 
 TEST(Live, TrafficAloneIsGaugedAndNothingElse)
