@@ -11,6 +11,7 @@ from rich.live import Live
 from rich.text import Text
 
 from .cli import shown
+from .views import words
 
 REFRESH_HZ = 4
 _LETTERS = {"nearest": "n", "union": "u", "facing": "f", "exact": "x"}
@@ -209,6 +210,7 @@ def measured(report, width):
             ("gauged Es/N0", _gauged(total)),
             ("lock", _lock(lock)),
         ]
+        + [(f"{title.lower()}: {what}", said) for title, rows in words.unjudged(total) for what, said in rows]
     )
 
 

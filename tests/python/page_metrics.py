@@ -134,3 +134,14 @@ def test_the_scrape_example_reads_the_page_as_it_is_by_default():
     defaults = signature(Server).parameters
     assert job["metrics_path"] == "/metrics"
     assert job["static_configs"][0]["targets"] == [f"{defaults['address'].default}:{defaults['port'].default}"]
+
+
+def test_symbols_that_nobody_can_judge():
+    report = sample_reports.partly()
+    found, total = values(text_of(report)), report["total"]
+    assert found["halfplane_symbols_live_total",] == total["live"]
+    assert found["halfplane_symbols_decoded_total",] == total["decoded"]
+    assert found["halfplane_es_n0_decibels", "live"] == total["live_part"]["es_n0_db"]
+    assert found["halfplane_predicted_error_rate_ratio", "ser", "live", "exact"] == total["live_part"]["predicted"]["exact"]["ser"]
+    assert found["halfplane_error_rate_ratio", "ser", "decoded"] == total["decoded_part"]["ser"]
+    assert ("halfplane_error_rate_ratio", "ser", "live") not in found

@@ -92,3 +92,29 @@ def full():
         seconds={"errored": 12, "severely_errored": 1, "unavailable": 0, "available": 400},
     )  # fmt: skip
     return report
+
+
+def live():
+    """Live traffic alone: nothing counted, the gauge blind."""
+    report = searching()
+    del report["lock"], report["pattern"]
+    total = report["total"]
+    total.update(live=15_904, excluded={"before_lock": 0, "slip": 0, "signal_lost": 0, "overflow": 0})
+    total["live_part"] = {
+        "symbols": 15_904, "gauged": 15_904, "sampled": 15_904, "es_n0_db": 14.48, "es_n0_db_se": 0.029,
+        "predicted": {rung: {"ser": f * 7.1e-3, "ber": f * 1.9e-3} for rung, f in {"exact": 1.0, "facing": 1.02, "union": 1.1, "nearest": 0.7}.items()},
+    }  # fmt: skip
+    return report
+
+
+def partly():
+    """Preambles known in advance, some frames known by decoding, the rest live."""
+    report = step(12.0)
+    del report["lock"]
+    total = report["total"]
+    total.update(decoded=50_279, live=86_708, live_part={**live()["total"]["live_part"], "symbols": 86_708})
+    total["in"] += 50_279 + 86_708
+    total["decoded_part"] = {
+        "symbols": 50_279, "symbol_errors": 3, "ser": 3 / 50_279, "ser_low": 1.2e-5, "ser_high": 1.7e-4, "es_n0_db": 12.31, "es_n0_db_se": 0.02,
+    }  # fmt: skip
+    return report

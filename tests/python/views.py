@@ -11,6 +11,7 @@ import sample_reports
 from command import FIRN as FIRN_FILE
 from drawn import number, outside, overlaps
 from gnuradio.halfplane import load_set, views
+from gnuradio.halfplane.views.account import rows as account_rows
 from gnuradio.halfplane.views import drawing, lettering, svg, themes, words
 from sample_logs import settings_of
 
@@ -20,6 +21,7 @@ SETTINGS = settings_of(FIRN)
 REPORTS = {
     "high": sample_reports.step(8.0), "low": sample_reports.step(18.0), "silent": sample_reports.silent(),
     "searching": sample_reports.searching(), "empty": {}, "full": sample_reports.full(),
+    "live": sample_reports.live(), "partly": sample_reports.partly(),
 }  # fmt: skip
 SIZES = [(360.0, 260.0), (720.0, 300.0), (1200.0, 420.0)]
 
@@ -184,3 +186,69 @@ def test_heading_answers_three_questions():
 
 def test_share_of_all_but_a_few_is_not_all():
     assert words.percent(0.99999) == "99.99 %" and words.percent(1.0) == "100 %" and words.percent(0.0022) == "0.22 %"
+
+
+@pytest.mark.parametrize("name", ["live", "partly", "full"])
+def test_account_adds_up_with_every_kind_of_symbol(name):
+    report = REPORTS[name]
+    assert sum(number for _, number, _ in account_rows(report)) == report["total"]["in"]
+
+
+def test_live_traffic_is_never_shown_as_counted():
+    report = REPORTS["live"]
+    locked, good, sure = views.answers(report)
+    assert (locked.answer, good.answer, sure.answer) == ("No pattern to lock to", "Nothing to hold it against", "Nothing is counted")
+    assert "14.48 ± 0.029 dB" in good.detail and words.rate(7.1e-3) in sure.detail
+    ladder = views.ladder(report)
+    assert ladder.texts().count("predicted of live traffic; nothing is counted") == 2
+    assert not [item for item in ladder.items if isinstance(item, drawing.Bar)]  # no measured bar
+    assert words.rate(7.1e-3) in ladder.texts() and "not counted" in ladder.description
+    account = views.account(report)
+    assert "live, gauged blindly" in account.texts() and "cannot be counted" in account.texts()
+    assert "15\u202f904" in account.texts()
+
+
+def test_what_was_known_by_decoding_stands_apart():
+    report = REPORTS["partly"]
+    account = views.account(report)
+    assert {"known by decoding alone", "Known by decoding alone", "3 of 50\u202f279", "are missing here: it flatters"} <= set(account.texts())
+    # The ladder shows what was known in advance, and nothing of the others.
+    assert words.rate(report["total"]["ser"]) in views.ladder(report).texts()
+    assert words.rate(3 / 50_279) not in views.ladder(report).texts()
+
+
+def test_layers_of_the_decision_map():
+    """What is shown on demand stands in a layer of its own, by which a page hides it."""
+    shown = views.decision_map(REPORTS["full"], SETTINGS, labels=True, cloud=[0.1 + 0.2j])
+    layers = {item.layer for item in shown.items if getattr(item, "layer", "")}
+    assert layers == set(drawing.LAYERS)
+    assert all(item.layer == "labels" for item in shown.items if isinstance(item, drawing.Text) and item.text in FIRN.label_strings)
+    text = svg.render(shown, "page")
+    assert text.count('class="layer-labels"') == 2 * FIRN.size  # each with its halo
+    assert text.count('class="layer-samples"') == 1
+    tight = views.decision_map({}, settings_of(load_set("qam:256")), (200.0, 260.0), labels=True)
+    assert "labels do not fit at this size" in tight.texts() and not set(load_set("qam:256").label_strings) & set(tight.texts())
+    assert "labels are written up to 256 points" in views.decision_map({}, settings_of(load_set("qam:1024")), labels=True).texts()
+
+
+def test_greyscale_loses_nothing():
+    """What two colours tell apart, something else tells too: a sign, a shape, a stroke, a hatch or a word."""
+    report = REPORTS["full"]
+    # The four rungs: no two strokes are alike.
+    strokes = {item.role: (item.width, item.dash) for item in views.ladder(report).items if isinstance(item, drawing.Line) and item.note and item.role in words.RUNGS}
+    assert len(strokes) == len(set(strokes.values())) == 4
+    # Tiles with more and with fewer errors than expected: plus and minus at their points, a circle where neither.
+    crowded = {**report, "total": {**report["total"], "es_n0_db": 12.0, "transitions": [[0, 1, 900, 100.0], [1, 0, 10, 100.0], [2, 3, 100, 100.0]]}}
+    shown = views.decision_map(crowded, SETTINGS)
+    signs = {item.shape for item in shown.items if isinstance(item, drawing.Mark)}
+    roles = {item.role for item in shown.items if isinstance(item, drawing.Polygon)}
+    assert {"more", "fewer"} <= roles and {"plus", "minus"} <= signs
+    calm = views.decision_map({}, SETTINGS)
+    assert {item.shape for item in calm.items if isinstance(item, drawing.Mark)} == {"circle"}
+    # Good, bad and open: three shapes, in the heading and in the account.
+    for states in ({"good": "held", "bad": "lost", "open": "doubtful"},):
+        found = {role: next(item.shape for item in views.heading({"lock": {"state": state}}).items if isinstance(item, drawing.Mark)) for role, state in states.items()}
+        assert len(set(found.values())) == 3
+    # What no cause explains is hatched, the causes are not; each row has its name.
+    bars = [item for item in views.losses(report, SETTINGS).items if isinstance(item, drawing.Bar) and item.role == "loss" or isinstance(item, drawing.Bar) and item.edge == "rest"]
+    assert any(item.hatch for item in bars) and not all(item.hatch for item in bars)

@@ -17,12 +17,15 @@ LOCK_STATES = ("searching", "held", "doubtful", "lost")
 VERDICTS = ("pass", "fail", "undecided")
 _RUNGS = ("exact", "facing", "union", "nearest")
 _PARTS = {"run": "total", "window": "window"}
+_UNJUDGED = {"decoded": "decoded_part", "live": "live_part"}  # parts of the run whose symbols were not known in advance
 
 # Counters of the whole run: name, place in the report's `total` (or `seconds`), help.
 _OF_TOTAL = (
     ("halfplane_symbols_in", "in", "Symbols taken in."),
     ("halfplane_symbols_judged", "judged", "Symbols judged right or wrong."),
     ("halfplane_symbols_nonfinite", "nonfinite", "Symbols left out because the sample was not a finite number."),
+    ("halfplane_symbols_decoded", "decoded", "Symbols known by decoding alone, counted apart."),
+    ("halfplane_symbols_live", "live", "Symbols of live traffic, which nobody can judge."),
     ("halfplane_symbol_errors", "symbol_errors", "Symbols decided wrong."),
     ("halfplane_bits", "bits", "Label bits of the symbols judged."),
     ("halfplane_bit_errors", "bit_errors", "Label bits decided wrong."),
@@ -93,6 +96,7 @@ def _counters(report: dict) -> Iterator[Metric]:
 
 def _gauges(report: dict) -> Iterator[Metric]:
     parts = {part: report[place] for part, place in _PARTS.items() if place in report}
+    parts |= {part: report["total"][place] for part, place in _UNJUDGED.items() if place in report.get("total", {})}
     for name, unit, key, help_text in _OF_PARTS:
         yield from _known(name, unit, help_text, [({"part": part}, values.get(key)) for part, values in parts.items()])
     for end, help_text in (("", "Errors counted a symbol (ser) or bit (ber)."), ("_low", "Low end of its interval."), ("_high", "High end of its interval.")):

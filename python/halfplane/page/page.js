@@ -10,9 +10,8 @@ const VIEWS = {
   curve: "Error rate against Es/N0",
   account: "Account and verdict",
 };
+const LAYERS = { decision_map: ["labels", "samples"] };
 const THEMES = ["system", "light", "dark"];
-// Layers of the decision map, each with its button, and whether they are shown at first.
-const LAYERS = { labels: "off", samples: "on" };
 const NARROW = matchMedia("(max-width: 519px)");
 const STALE_SECONDS = 5;
 
@@ -37,6 +36,16 @@ function element(name, className, text = "") {
   return made;
 }
 
+// The server draws what is shown on demand in layers; the style sheet hides them until asked for.
+function layerButton(figure, layer) {
+  const button = element("button", "", layer[0].toUpperCase() + layer.slice(1));
+  button.type = "button";
+  button.dataset.layer = layer;
+  button.setAttribute("aria-pressed", "false");
+  button.addEventListener("click", () => button.setAttribute("aria-pressed", String(figure.classList.toggle(layer))));
+  return button;
+}
+
 function buildViews() {
   for (const [name, title] of Object.entries(VIEWS)) {
     const figure = document.createElement("figure");
@@ -44,8 +53,9 @@ function buildViews() {
     const head = document.createElement("div");
     const heading = element("h2", "", title);
     heading.id = `${name}-title`;
-    const enlarge = element("button", "enlarge", "Enlarge");
+    const enlarge = element("button", "", "Enlarge");
     enlarge.type = "button";
+    enlarge.className = "enlarge";
     enlarge.setAttribute("aria-pressed", "false");
     enlarge.setAttribute("aria-label", `Enlarge: ${title}`);
     enlarge.addEventListener("click", () => {
@@ -53,29 +63,11 @@ function buildViews() {
       enlarge.setAttribute("aria-pressed", String(large));
       figure.scrollIntoView({ block: "nearest" });
     });
-    head.append(heading, ...(name === "decision_map" ? layerButtons(figure) : []), enlarge);
+    head.append(heading, ...(LAYERS[name] || []).map((layer) => layerButton(figure, layer)), enlarge);
     figure.setAttribute("aria-labelledby", heading.id);
     figure.append(head, element("div", "empty", "No picture yet"));
     byId("views").append(figure);
   }
-}
-
-function layerButtons(figure) {
-  return Object.entries(LAYERS).map(([layer, first]) => {
-    const button = element("button", "", layer[0].toUpperCase() + layer.slice(1));
-    button.type = "button";
-    button.id = `show-${layer}`;
-    const show = (state) => {
-      figure.dataset[layer] = state;
-      button.setAttribute("aria-pressed", String(state === "on"));
-    };
-    button.addEventListener("click", () => {
-      show(figure.dataset[layer] === "on" ? "off" : "on");
-      keep(layer, figure.dataset[layer]);
-    });
-    show(kept(layer, ["on", "off"], first));
-    return button;
-  });
 }
 
 function showView(name, text) {
@@ -143,28 +135,24 @@ function connect() {
 function setTheme(theme) {
   document.documentElement.dataset.theme = theme;
   byId("theme").textContent = `Colours: ${theme}`;
-  keep("colours", theme);
-}
-
-function keep(name, value) {
   try {
-    localStorage.setItem(name, value);
+    localStorage.setItem("colours", theme);
   } catch {
-    // A browser that keeps nothing still shows it.
+    // A browser that keeps nothing still shows them.
   }
 }
 
-function kept(name, values, first) {
+function keptTheme() {
   try {
-    const found = localStorage.getItem(name);
-    return values.includes(found) ? found : first;
+    const kept = localStorage.getItem("colours");
+    return THEMES.includes(kept) ? kept : "system";
   } catch {
-    return first;
+    return "system";
   }
 }
 
 buildViews();
-setTheme(kept("colours", THEMES, "system"));
+setTheme(keptTheme());
 byId("theme").addEventListener("click", () => setTheme(THEMES[(THEMES.indexOf(document.documentElement.dataset.theme) + 1) % THEMES.length]));
 byId("pause").addEventListener("click", () => {
   held = !held;

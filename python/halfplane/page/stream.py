@@ -10,6 +10,7 @@ import time
 
 from .. import views
 from ..views.board import Board
+from ..views.drawing import LAYERS
 from ..views.pace import Pace
 
 # Room for a drawing on the page, in CSS pixels at 100 %, by the layout that a client asks for.
@@ -129,7 +130,7 @@ class Studio:
 
     def _drawn(self, name: str, layout: str) -> bytes | None:
         try:
-            return event(name, views.render(self._board.draw(name, LAYOUTS[layout][name], labels=True), "page"))
+            return event(name, views.render(self._board.draw(name, LAYOUTS[layout][name], LAYERS), "page"))
         except Exception:  # whatever a report may hold, the others are drawn
             if name not in self._failed:
                 self._failed.add(name)

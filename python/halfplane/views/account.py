@@ -16,6 +16,8 @@ def rows(report: dict) -> list[tuple[str, int, str]]:
     """(what, symbols, role): parts of the account that add up to the symbols taken in."""
     total = report.get("total", {})
     found = [("judged", total.get("judged", 0), "exact")]
+    # Shown where there are any: most links know all that was sent.
+    found += [(what, total[key], role) for what, key, role in (("known by decoding alone", "decoded", "facing"), ("live, gauged blindly", "live", "nearest")) if total.get(key)]
     found += [(words.CAUSES.get(cause, words.name(cause)), number, CAUSE_ROLES.get(cause, "lost")) for cause, number in total.get("excluded", {}).items()]
     return [*found, ("not finite", total.get("nonfinite", 0), "bad"), ("pending", total.get("pending", 0), "rest")]
 
@@ -33,6 +35,8 @@ def account(report: dict, settings: dict | None = None, size: tuple[float, float
     left_end = _draw_account(out, report, _MARGIN, 8, column)
     x, y = (2 * _MARGIN + column, 8) if wide else (_MARGIN, left_end + 14)
     right_end = _draw_premises(out, report, x, y, column)
+    for title, lines in words.unjudged(report["total"]):
+        right_end = _draw_lines(out, title, lines, x, right_end + 8, column)
     right_end = _draw_frames(out, report, x, right_end + 8, column)
     right_end = _draw_seconds(out, report, x, right_end + 8, column)
     end = _draw_verdict(out, report, max(left_end, right_end) + 12)
@@ -98,12 +102,16 @@ def _draw_frames(out: Drawing, report: dict, x: float, y: float, room: float) ->
     total = report["total"]
     if "frames" not in total:
         return y - 8
-    y = _head(out, x, y, room, "Frames")
     lines = [("judged", words.count(total["frames"])), ("in error", words.count(total.get("frame_errors", 0)))]
     if "fer" in total:
         lines.append(("frame error rate", f"{words.rate(total['fer'])} ({words.interval(total.get('fer_low'), total.get('fer_high'))})"))
     if left_out := sum(total.get("frames_excluded", {}).values()):
         lines.append(("left out", words.count(left_out)))
+    return _draw_lines(out, "Frames", lines, x, y, room)
+
+
+def _draw_lines(out: Drawing, title: str, lines: list[tuple[str, str]], x: float, y: float, room: float) -> float:
+    y = _head(out, x, y, room, title)
     for what, said in lines:
         y += _ROW
         out.add(Text(x + 17, y, lettering.shortened(what, room - 27 - lettering.width(said), 12), "ink", 12), Text(x + room, y, said, "ink", 12, "end"))
@@ -114,12 +122,8 @@ def _draw_seconds(out: Drawing, report: dict, x: float, y: float, room: float) -
     seconds = report.get("seconds")
     if not seconds:
         return y - 8
-    y = _head(out, x, y, room, "Seconds")
-    for what, key in (("errored", "errored"), ("severely errored", "severely_errored"), ("unavailable", "unavailable"), ("available", "available")):
-        if key in seconds:
-            y += _ROW
-            out.add(Text(x + 17, y, what, "ink", 12), Text(x + room, y, words.count(seconds[key]) + " s", "ink", 12, "end"))
-    return y + 6
+    kinds = ("errored", "severely_errored", "unavailable", "available")
+    return _draw_lines(out, "Seconds", [(words.name(key), words.count(seconds[key]) + " s") for key in kinds if key in seconds], x, y, room)
 
 
 def _draw_verdict(out: Drawing, report: dict, y: float) -> float:
@@ -142,6 +146,8 @@ def _description(report: dict) -> str:
     parts = ", ".join(f"{words.count(number)} {what}" for what, number, _ in rows(report) if number)
     text = f"Of {words.count(total.get('in', 0))} symbols taken in: {parts or 'none yet'}."
     failing = [f"{words.name(each.get('name', ''))} {words.premise(each)}" for each in report.get("premises", ()) if each.get("state") == "fails"]
+    for title, lines in words.unjudged(total):
+        text += f" {title}: " + ", ".join(f"{what} {said}" for what, said in lines) + "."
     if "premises" in report:
         text += " Premises: " + (", ".join(failing) if failing else "none fails") + "."
     if "verdict" in report:

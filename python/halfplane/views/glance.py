@@ -33,12 +33,28 @@ def answers(report: dict) -> tuple[Answer, Answer, Answer]:
 def _locked(report: dict) -> Answer:
     question, lock = "Locked?", report.get("lock", {})
     state = lock.get("state")
+    if state is None and (unknown := _not_known_in_advance(report)):
+        return Answer(question, "quiet", "No pattern to lock to", f"{words.percent(unknown)} of the symbols were not known in advance")
     if state is None:
         return Answer(question, "quiet", "Lock " + words.UNKNOWN)
     role, answer = {
         "held": ("good", "Locked"), "doubtful": ("open", "Lock in doubt"), "searching": ("open", "Searching"), "lost": ("bad", "Lock lost"),
     }.get(state, ("quiet", f"Lock {words.name(str(state))}"))  # fmt: skip
     return Answer(question, role, answer, words.lock(lock, report.get("total", {}).get("slips", 0)))
+
+
+def _not_known_in_advance(report: dict) -> float:
+    """Share of the symbols handed over."""
+    total = report.get("total", {})
+    unknown = total.get("live", 0) + total.get("decoded", 0)
+    return unknown / (unknown + total.get("judged", 0)) if unknown else 0.0
+
+
+def _live_only(report: dict) -> dict:
+    """What was gauged blindly, where nothing could be judged."""
+    total = report.get("total", {})
+    part = total.get("live_part", {})
+    return part if not total.get("judged") and "es_n0_db" in part else {}
 
 
 def _as_good(report: dict) -> Answer:
@@ -48,6 +64,8 @@ def _as_good(report: dict) -> Answer:
     if "db" not in at:
         if "db" in there:
             return Answer(question, _size(there), f"{words.db(there['db'])} dB short at the input", words.ends(there))
+        if live := _live_only(report):
+            return Answer(question, "quiet", "Nothing to hold it against", f"live traffic at Es/N0 {words.gauged(live)}, gauged blindly")
         return Answer(question, "quiet", words.UNKNOWN.capitalize(), "a shortfall takes some errors")
     low, high = at.get("db_low", at["db"]), at.get("db_high", at["db"])
     ends = words.ends(at)
@@ -76,7 +94,8 @@ def _sure(report: dict) -> Answer:
     question, total, verdict = "How sure is that?", report.get("total", {}), report.get("verdict", {})
     said, role = words.certainty(total, report.get("confidence", 0.95))
     if role == "quiet":
-        return Answer(question, "quiet", said)
+        rate = _live_only(report).get("predicted", {}).get("exact", {}).get("ser")
+        return Answer(question, "quiet", *(("Nothing is counted", f"SER {words.rate(rate)} is predicted of live traffic") if rate else (said,)))
     share = words.left_out(report)
     detail = words.counted(total)
     if share > MOST_EXCLUDED:

@@ -48,7 +48,9 @@ class _Row:
         self.kind = kind
         self.measured = counted.get(kind)
         self.low, self.high = counted.get(kind + "_low"), counted.get(kind + "_high")
-        predicted = counted.get("predicted", {})
+        # Of live traffic the rungs alone: nothing can be counted there.
+        self.live = self.measured is None and "live_part" in counted
+        predicted = (counted["live_part"] if self.live else counted).get("predicted", {})
         self.rungs = {name: predicted[name][kind] for name in words.RUNGS if predicted.get(name, {}).get(kind, 0) > 0}
         self.target = report.get("verdict", {}).get("target", {}).get(kind)
         self.errors = counted.get({"ser": "symbol_errors", "ber": "bit_errors"}[kind], 0)
@@ -61,9 +63,12 @@ class _Row:
     def sentence(self) -> str:
         """The row for whoever cannot see it."""
         name = words.KINDS[self.kind].capitalize()
-        if self.measured is None:
+        if self.measured is None and not (self.live and self.rungs):
             return f"{name} {words.UNKNOWN}."
-        text = f"{name} {words.rate(self.measured)}, {100 * self.confidence:g} % interval {words.interval(self.low, self.high)}"
+        if self.live:
+            text = f"{name} not counted"
+        else:
+            text = f"{name} {words.rate(self.measured)}, {100 * self.confidence:g} % interval {words.interval(self.low, self.high)}"
         if self.rungs:
             text += "; predicted: " + ", ".join(f"{name} {words.rate(value)}" for name, value in self.rungs.items())
         return text + "."
@@ -72,10 +77,13 @@ class _Row:
 def _draw_row(out: Drawing, row: _Row, axis: LogAxis, top: float, height: float) -> None:
     head, line = top + 16, top + height - 26
     out.add(Text(_MARGIN, head, row.kind.upper(), "ink", 13, bold=True))
-    if row.measured is None:
+    if row.measured is None and not (row.live and row.rungs):
         out.add(Text(_MARGIN + 44, head, words.UNKNOWN, "quiet", 12))
         return
-    _draw_head(out, row, head)
+    if row.live:
+        out.add(Text(_MARGIN + 44, head, "predicted of live traffic; nothing is counted", "quiet", 12))
+    else:
+        _draw_head(out, row, head)
     out.add(Line(((axis.low_end, line), (axis.high_end, line)), "rule", 1.5))
     _draw_rungs(out, row, axis, head + 18, line)
     _draw_measured(out, row, axis, line)
@@ -134,7 +142,7 @@ def _draw_rungs(out: Drawing, row: _Row, axis: LogAxis, top: float, line: float)
 
 def _draw_measured(out: Drawing, row: _Row, axis: LogAxis, line: float) -> None:
     """Below the line that the rungs stand on: a bar over the interval, a tick at the estimate; open to the left without errors."""
-    if not row.high or row.high <= 0:
+    if row.measured is None or not row.high or row.high <= 0:
         return
     note = f"measured {words.rate(row.measured)}, interval {words.interval(row.low, row.high)}"
     high = axis(row.high)

@@ -162,6 +162,31 @@ def left_out(report: dict) -> float:
     return out / (out + total.get("judged", 0)) if out else 0.0
 
 
+def gauged(part: dict) -> str:
+    """'14.48 ± 0.03 dB': an Es/N0 with its standard error."""
+    if "es_n0_db" not in part:
+        return UNKNOWN
+    return f"{db(part['es_n0_db'])}" + (f" ± {part['es_n0_db_se']:.2g}" if "es_n0_db_se" in part else "") + " dB"
+
+
+def unjudged(total: dict) -> list[tuple[str, list[tuple[str, str]]]]:
+    """
+    What is said of symbols that were not known in advance → (title, rows of (what, value)) for those known by decoding alone and
+    for live traffic; none where there are none.
+    """
+    out = []
+    if part := total.get("decoded_part"):
+        wrong, of = part.get("symbol_errors", 0), part.get("symbols", 0)
+        rows = [("symbol errors", f"{count(wrong)} of {count(of)}"), ("Es/N0", gauged(part)), ("frames that failed", "are missing here: it flatters")]
+        out.append(("Known by decoding alone", rows))
+    if part := total.get("live_part"):
+        rows = [("Es/N0, gauged blindly", gauged(part)), ("from samples", count(part.get("sampled", 0)))]
+        exact = part.get("predicted", {}).get("exact", {})
+        rows += [(f"{kind.upper()} predicted", rate(exact[kind])) for kind in ("ser", "ber") if kind in exact]
+        out.append(("Live traffic", [*rows, ("errors", "cannot be counted")]))
+    return out
+
+
 def certainty(total: dict, confidence: float) -> tuple[str, str]:
     """How well the symbol error rate is known → (words, role): good from an interval of a tenth on either side on."""
     ser, low, high = (total.get("ser" + end) for end in ("", "_low", "_high"))
