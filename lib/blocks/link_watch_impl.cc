@@ -159,8 +159,8 @@ void link_watch_impl::publish(const ::halfplane::link::report& made)
     static const pmt::pmt_t settings = pmt::mp("settings"), carry = pmt::mp("carry"),
                             cloud = pmt::mp("cloud");
     auto message = pmt::dict_add(json_to_pmt(made), settings, d_settings);
-    if (const auto& recent = d_reporter.recent(); !recent.empty())
-        message = pmt::dict_add(message, cloud, pmt::init_c32vector(recent.size(), recent));
+    if (const auto& recent = d_reporter.recent_samples(); !recent.empty())
+        message = pmt::dict_add(message, cloud, pmt::init_c32vector(recent.size(), recent.data()));
     // Of large sets the state is long: it may take a tenth of the time, and goes out with the last report in
     // any case.
     const auto began = std::chrono::steady_clock::now();

@@ -72,7 +72,7 @@ void watch::counting::take(const std::complex<float>* in,
     }
     if (residuals)
         explain(in, reference, n);
-    recent.add(in, reference, n);
+    open.recent.add(in, reference, n);
 }
 
 void watch::counting::check_references(const reference_t* reference, std::size_t n) const
@@ -166,8 +166,6 @@ void watch::counting::close(const window_handler& on_window)
         if (const auto fit = open.fit.solve(set))
             follow_noise(fit->n0);
     open.map_n0 = map_n0;
-    open.recent = recent.kept();
-    recent = {};
     window done(set);
     std::swap(done, open);
     open.first_symbol = handed;

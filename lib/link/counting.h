@@ -4,7 +4,6 @@
 
 #include "halfplane/kernels/detect.h"
 #include "halfplane/link/watch.h"
-#include "recent_samples.h"
 #include "second_clock.h"
 
 #include <array>
@@ -66,7 +65,6 @@ struct watch::counting {
     std::optional<residual_gatherer> residuals;
 
     window open;
-    recent_samples recent;
     std::uint64_t in_window = 0, handed = 0, pending = 0;
     block_counts blocks;
     second_clock seconds;

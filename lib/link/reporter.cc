@@ -53,6 +53,7 @@ struct reporter::impl {
 
     watch measured;
     const reporter_options how;
+    link::recent_samples recent; // the worker's own
     std::mutex life, stream;
     std::thread worker;
     bool running = false; // under `life`
@@ -93,6 +94,7 @@ void reporter::impl::work()
 void reporter::impl::make_report(watch::window&& w, bool final)
 {
     try {
+        recent = std::move(w.recent);
         auto made = measured.report_of(std::move(w), final);
         {
             const std::lock_guard held(slot_lock);
@@ -160,14 +162,14 @@ void reporter::add(const std::complex<float>* in,
     d->measured.add(in, reference, decided, count, [this](watch::window&& w) { d->put(std::move(w)); });
 }
 
-const std::vector<std::complex<float>>& reporter::recent() const
-{
-    return d->measured.recent();
-}
-
 std::string reporter::carry() const
 {
     return d->measured.carry().dump();
+}
+
+const std::vector<std::complex<float>>& reporter::recent_samples() const noexcept
+{
+    return d->recent.samples();
 }
 
 void reporter::set_lock(const lock_status& status)

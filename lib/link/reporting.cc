@@ -165,7 +165,6 @@ report watch::reporting::window_part(const window& w, const run_intervals& ends)
 report watch::reporting::report_of(window&& w, bool final)
 {
     d_counts.merge(w.counts);
-    d_recent = std::move(w.recent);
     d_run = {w.blocks, w.seconds, w.trial, w.map_n0};
     d_fit.merge(w.fit);
     d_explanation.add(w.residuals);

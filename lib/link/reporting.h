@@ -71,7 +71,6 @@ struct watch::reporting {
     };
     run_state d_run;
     tally d_counts; ///< of the run
-    std::vector<std::complex<float>> d_recent;
 
 private:
     std::uint64_t slips() const { return d_slips_before + (d_lock ? d_lock->slips : 0); }

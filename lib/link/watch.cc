@@ -31,14 +31,13 @@ void watch::window::merge(window&& later)
     counts.merge(later.counts);
     fit.merge(later.fit);
     residuals.merge(later.residuals);
+    recent.merge(later.recent);
     if (!decoded)
         decoded = std::move(later.decoded);
     else if (later.decoded)
         decoded->merge(*later.decoded);
     decoded_fit.merge(later.decoded_fit);
     live.merge(later.live);
-    if (!later.recent.empty())
-        recent = std::move(later.recent);
     blocks = later.blocks;
     seconds = later.seconds;
     trial = std::move(later.trial);
@@ -126,11 +125,6 @@ void watch::set_pending(std::uint64_t pending)
 std::uint64_t watch::handed_in() const noexcept
 {
     return d_count->handed;
-}
-
-const std::vector<std::complex<float>>& watch::recent() const
-{
-    return d_report->d_recent;
 }
 
 report watch::report_of(window&& w, bool final)

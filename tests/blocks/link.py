@@ -3,8 +3,10 @@
 
 import hashlib
 import json
+import time
 
 import numpy as np
+import pmt
 import pytest
 from gnuradio import halfplane
 from scipy import optimize, stats
@@ -130,9 +132,34 @@ def test_a_second_flowgraph_goes_on_from_the_log(tmp_path):
     assert both["verdict"]["log_wealth_pass"] > first["verdict"]["log_wealth_pass"]
     lines = [json.loads(line) for line in open(log)]
     assert [line["sequence"] for line in lines if "sequence" in line] == list(range(both["sequence"] + 1))
-    assert all("carry" not in line and "cloud" not in line for line in lines)
+    assert all("carry" not in line for line in lines)
     with pytest.raises(ValueError, match='target was "ser:0.1" in the earlier run, is "ser:0.2"'):
         halfplane.link_watch(which, "", 1000, target="ser:0.2", resume=log)
+
+
+def test_messages_carry_recent_samples_and_the_log_does_not(tmp_path):
+    """Each the latest judged ones of its window, where the stream repeats with every window."""
+    from gnuradio import blocks, gr
+
+    which, log = halfplane.load_set("psk:4"), str(tmp_path / "log.jsonl")
+    sent = np.arange(5000) % 4
+    samples = (np.array(which.points)[sent] + 1e-3 * np.arange(5000)).astype(np.complex64)
+    reference = np.where(np.arange(5000) < 4900, sent, -3)
+    watch, writer, store, graph = halfplane.link_watch(which, "", 5000), halfplane.link_log(log), blocks.message_debug(), gr.top_block()
+    graph.connect(blocks.vector_source_c(samples.tolist(), True), blocks.throttle(gr.sizeof_gr_complex, 1e5), (watch, 0))
+    graph.connect(blocks.vector_source_s(reference.tolist(), True), (watch, 1))
+    graph.msg_connect(watch, "report", writer, "report")
+    graph.msg_connect(watch, "report", store, "store")
+    graph.start()
+    end = time.monotonic() + 20
+    while store.num_messages() < 1 and time.monotonic() < end:
+        time.sleep(0.02)
+    graph.stop()
+    graph.wait()
+    cloud = pmt.to_python(pmt.dict_ref(store.get_message(0), pmt.intern("cloud"), pmt.PMT_NIL))
+    np.testing.assert_array_equal(cloud, samples[4900 - 256 : 4900])
+    lines = [json.loads(line) for line in open(log)]
+    assert len(lines) >= 2 and all("cloud" not in line for line in lines) and "cloud" not in watch.report()
 
 
 def test_window_closes_and_the_last_one_is_counted():

@@ -101,7 +101,7 @@ def test_every_view_shows_the_reports_numbers(browser, server, size, theme):
     # Nothing runs over the edge, letters are large enough to read, colours are the theme's.
     assert browser.execute_script("return document.documentElement.scrollWidth <= innerWidth")
     least = browser.execute_script(
-        "return Math.min(...[...document.querySelectorAll('figure svg text:not(.layer-labels)')].map((t) => parseFloat(t.getAttribute('font-size')) * t.ownerSVGElement.getBoundingClientRect().width / t.ownerSVGElement.viewBox.baseVal.width))"
+        "return Math.min(...[...document.querySelectorAll('figure svg text')].map((t) => parseFloat(t.getAttribute('font-size')) * t.ownerSVGElement.getBoundingClientRect().width / t.ownerSVGElement.viewBox.baseVal.width))"
     )
     assert least >= 9, least
     assert background(browser) == rgb(theme)
@@ -153,9 +153,9 @@ def test_all_is_reached_by_the_keyboard(browser, server):
     for _ in range(16):
         browser.switch_to.active_element.send_keys(Keys.TAB)
         reached.append(browser.execute_script("const at = document.activeElement; return at.id || at.getAttribute('aria-label') || at.className"))
-    assert reached[:4] == ["skip", "pause", "theme", "report"]
+    assert reached[:4] == ["skip", "pause", "theme", "report"] and {"show-labels", "show-samples"} <= set(reached)
     assert sum(str(each).startswith("Enlarge") for each in reached) == 6
-    browser.find_element("css selector", "#curve button.enlarge").send_keys(Keys.ENTER)
+    browser.find_element("css selector", "#curve button").send_keys(Keys.ENTER)
     before = browser.execute_script("return document.querySelector('#losses svg').getBoundingClientRect().width")
     assert browser.execute_script("return document.querySelector('#curve svg').getBoundingClientRect().height") <= 768
     assert browser.execute_script("return document.querySelector('#curve').getBoundingClientRect().width") > 1.8 * before
@@ -163,24 +163,27 @@ def test_all_is_reached_by_the_keyboard(browser, server):
     assert all(role == "img" and title and text for role, title, text in named)
 
 
-def test_labels_and_samples_on_demand(browser, server):
-    look(browser, (360, 740), "light")  # where other buttons give way these stay
-    server.publish({**FULL, "sequence": 1, "cloud": [0.1 + 0.2j, 0.3 - 0.4j]})
+def seen(browser, layer):
+    """How many elements of a layer take room on the screen."""
+    return browser.execute_script(f"return [...document.querySelectorAll('#decision_map .hp-{layer}')].filter((each) => each.getClientRects().length).length")
+
+
+def test_labels_and_samples_by_the_keyboard(browser, server):
+    """Shown and hidden at once, even where the page is held still; no script or style of a drawing has a part in it."""
+    server.publish({**FULL, "sequence": 1, "cloud": [0.25 + 0.5j, -0.125 + 0j]})
+    look(browser, (1024, 768), "light")
     open_page(browser, server)
-    wait_for(browser, "document.querySelector('#decision_map .layer-samples') !== null")
-    seen = "[...document.querySelectorAll('#decision_map .layer-{}')].some((each) => getComputedStyle(each).display !== 'none')"
-    for layer in ("labels", "samples"):
-        button = browser.find_element("css selector", f"#decision_map button[data-layer={layer}]")
-        assert button.is_displayed() and button.get_attribute("aria-pressed") == "false"
-        assert not browser.execute_script("return " + seen.format(layer))
-        button.send_keys(Keys.ENTER)
-        assert button.get_attribute("aria-pressed") == "true" and browser.execute_script("return " + seen.format(layer))
-    # They stay while drawings come.
-    server.publish({**FULL, "sequence": 2, "total": {**FULL["total"], "symbol_errors": 987_654}, "cloud": [0.5j]})
-    wait_for(browser, "document.getElementById('answers').textContent.includes('987\\u202f654')")
-    assert browser.execute_script("return " + seen.format("labels"))
-    report = browser.execute_async_script("const done = arguments[0]; fetch('report').then((r) => r.json()).then(done)")
-    assert "cloud" not in report
+    wait_for(browser, "document.querySelector('#decision_map .hp-samples')")
+    assert seen(browser, "labels") == 0 and seen(browser, "samples") == 1
+    browser.find_element("id", "pause").send_keys(Keys.ENTER)
+    browser.find_element("id", "show-labels").send_keys(Keys.ENTER)
+    browser.find_element("id", "show-samples").send_keys(Keys.SPACE)
+    assert seen(browser, "labels") == 2 * len(FULL["settings"]["labels"]) and seen(browser, "samples") == 0
+    pressed = [browser.find_element("id", f"show-{layer}").get_attribute("aria-pressed") for layer in ("labels", "samples")]
+    assert pressed == ["true", "false"]
+    open_page(browser, server)  # kept for the next visit
+    assert seen(browser, "labels") > 0 and seen(browser, "samples") == 0
+    browser.execute_script("localStorage.clear()")
     assert browser.get_log("browser") == []
 
 

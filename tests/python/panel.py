@@ -15,7 +15,7 @@ import pytest
 import sample_reports
 from drawn import number
 from PyQt5 import QtCore, QtGui, QtTest, QtWidgets
-from views import FIRN, SETTINGS
+from views import SETTINGS
 
 from gnuradio.halfplane import views
 from gnuradio.halfplane.panel.widget import Panel
@@ -176,7 +176,37 @@ def test_keys_zoom_move_and_lead_from_view_to_view(application, panel):
         at = at.nextInFocusChain()
         if at.focusPolicy() & QtCore.Qt.TabFocus:
             reached.add(at.objectName() or (at.text() if isinstance(at, QtWidgets.QPushButton) else ""))
-    assert {*NAMES, "&Colours", "&Picture", "&Report"} <= reached
+    assert {*NAMES, "&Colours", "&Picture", "&Report", "&Labels", "Sa&mples"} <= reached
+
+
+CLOUD = [0.25 + 0.5j, -0.125 + 0j, complex("nan"), 1e9]
+
+
+def test_labels_and_samples_by_key_and_by_button(application, panel):
+    """The map alone changes; what is off is not drawn."""
+    panel.publish({**FULL, "cloud": CLOUD})
+    panel.draw_all()
+
+    def shown():
+        found = panel.canvas("decision_map").drawing
+        dots = [item for item in found.items if isinstance(item, drawing.Cloud)]
+        return bool(set(SETTINGS["labels"]) & set(found.texts())), sum(len(each.points) for each in dots)
+
+    assert shown() == (False, 2)  # the two that lie in the frame
+    buttons = {each.text(): each for each in panel.findChildren(QtWidgets.QPushButton)}
+    QtTest.QTest.keyClick(buttons["&Labels"], QtCore.Qt.Key_Space)
+    assert shown() == (True, 2)
+    QtTest.QTest.mouseClick(buttons["Sa&mples"], QtCore.Qt.LeftButton)
+    assert shown() == (True, 0)
+    panel.activateWindow()
+    QtTest.QTest.qWaitForWindowActive(panel)
+    QtTest.QTest.keyClick(panel, QtCore.Qt.Key_L, QtCore.Qt.ControlModifier)
+    wait_for(application, lambda: shown() == (False, 0))
+    QtTest.QTest.keyClick(panel, QtCore.Qt.Key_M, QtCore.Qt.ControlModifier)
+    wait_for(application, lambda: shown() == (False, 2))
+    panel.publish({**FULL, "sequence": 1})  # a window without samples: the old ones are gone
+    panel.draw_all()
+    assert shown() == (False, 0) and "cloud" not in panel.board.latest()[0]
 
 
 def test_the_wheel_zooms_with_ctrl_only(panel):
@@ -299,36 +329,6 @@ def test_memory_is_flat_over_ten_thousand_reports(application, panel):
         tracemalloc.stop()
     print([f"{size / 1024:.0f} KiB" for size in sizes])
     assert max(sizes[1:]) - sizes[0] < 500_000
-
-
-def test_labels_and_samples_on_demand(application, panel):
-    """Off at first; by key and by button; the saved picture shows what the panel shows."""
-    panel.publish({**FULL, "cloud": [0.1 + 0.2j, 0.3 - 0.4j]})
-    application.processEvents()
-    panel.draw_all()
-    canvas, labels = panel.canvas("decision_map"), set(FIRN.label_strings)
-    clouds = lambda: [item for item in canvas.drawing.items if isinstance(item, drawing.Cloud)]  # noqa: E731
-    assert not labels & set(canvas.drawing.texts()) and not clouds()
-    panel.activateWindow()
-    buttons = {each.text(): each for each in panel.findChildren(QtWidgets.QPushButton)}
-    assert buttons["&Labels"].shortcut() == QtGui.QKeySequence("Ctrl+L") and buttons["&Samples"].shortcut() == QtGui.QKeySequence("Ctrl+D")
-    buttons["&Labels"].setFocus()
-    QtTest.QTest.keyClick(buttons["&Labels"], QtCore.Qt.Key_Space)
-    assert labels <= set(canvas.drawing.texts()) and not clouds()
-    buttons["&Samples"].click()
-    assert len(clouds()[0].points) == 2
-    buttons["&Labels"].click()
-    assert not labels & set(canvas.drawing.texts()) and clouds()
-    with pytest.raises(ValueError, match="layer is 'names'"):
-        panel.show_layer("names", True)
-
-
-def test_the_saved_picture_has_the_layers_that_are_shown(panel, tmp_path):
-    panel.save_picture(str(tmp_path / "plain.svg"))
-    panel.show_layer("labels", True)
-    panel.save_picture(str(tmp_path / "labelled.svg"))
-    label = 'class="layer-labels"'
-    assert label not in (tmp_path / "plain.svg").read_text() and label in (tmp_path / "labelled.svg").read_text()
 
 
 def test_greyscale(application):

@@ -8,7 +8,7 @@ import xml.etree.ElementTree as xml
 import numpy as np
 import pytest
 from command import FIRN as FIRN_FILE
-from drawn import counted, outside, tiles
+from drawn import counted, outside, overlaps, tiles
 from gnuradio.halfplane import load_set, predictor, signal_set, views
 from gnuradio.halfplane.views import basis, drawing, svg, words
 from sample_logs import settings_of
@@ -112,6 +112,19 @@ def test_map_of_small_and_large_sets(name):
         assert "not counted cell by cell" in " ".join(shown.texts())
     else:
         assert set(large.label_strings) <= set(shown.texts()) or name == "qam:256"
+    assert ("too many to be read" in " ".join(shown.texts())) == (large.size >= 256)
+
+
+def test_labels_are_drawn_where_they_can_be_read():
+    """Larger, the same set shows its labels; no letters below six units anywhere; labels keep clear of one another."""
+    large = load_set("qam:256")
+    for size in ((300.0, 340.0), (480.0, 450.0), (720.0, 770.0), (1400.0, 1400.0)):
+        shown = views.decision_map({"total": {}}, settings_of(large), size, labels=True)
+        found = [item for item in shown.items if isinstance(item, drawing.Text) and item.text in set(large.label_strings)]
+        assert len(found) == (256 if size[0] >= 700 else 0), size
+        assert all(item.size >= 6 and item.layer == "labels" for item in found)
+        assert ("too many to be read" in " ".join(shown.texts())) == (not found)
+        assert overlaps(shown) == [] and outside(shown) == []
 
 
 def test_map_shows_samples_and_labels_on_demand():
@@ -122,4 +135,8 @@ def test_map_shows_samples_and_labels_on_demand():
     full = views.decision_map(report, known, labels=True, cloud=samples)
     assert set(FIRN.label_strings) <= set(full.texts())
     dots = next(item for item in full.items if isinstance(item, drawing.Cloud))
-    assert len(dots.points) == 2000
+    assert len(dots.points) == 2000 and dots.layer == "samples"
+    # A page hides a layer by its class; without the layers the drawing is the plain one.
+    assert svg.render(full, "page").count('class="hp-labels"') == 24 and svg.render(full, "page").count('class="hp-samples"') == 1
+    bare = [item for item in full.items if not getattr(item, "layer", "")]
+    assert bare == plain.items

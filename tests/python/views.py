@@ -217,20 +217,6 @@ def test_what_was_known_by_decoding_stands_apart():
     assert words.rate(3 / 50_279) not in views.ladder(report).texts()
 
 
-def test_layers_of_the_decision_map():
-    """What is shown on demand stands in a layer of its own, by which a page hides it."""
-    shown = views.decision_map(REPORTS["full"], SETTINGS, labels=True, cloud=[0.1 + 0.2j])
-    layers = {item.layer for item in shown.items if getattr(item, "layer", "")}
-    assert layers == set(drawing.LAYERS)
-    assert all(item.layer == "labels" for item in shown.items if isinstance(item, drawing.Text) and item.text in FIRN.label_strings)
-    text = svg.render(shown, "page")
-    assert text.count('class="layer-labels"') == 2 * FIRN.size  # each with its halo
-    assert text.count('class="layer-samples"') == 1
-    tight = views.decision_map({}, settings_of(load_set("qam:256")), (200.0, 260.0), labels=True)
-    assert "labels do not fit at this size" in tight.texts() and not set(load_set("qam:256").label_strings) & set(tight.texts())
-    assert "labels are written up to 256 points" in views.decision_map({}, settings_of(load_set("qam:1024")), labels=True).texts()
-
-
 def test_greyscale_loses_nothing():
     """What two colours tell apart, something else tells too: a sign, a shape, a stroke, a hatch or a word."""
     report = REPORTS["full"]

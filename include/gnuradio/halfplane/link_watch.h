@@ -20,9 +20,9 @@ namespace gr::halfplane {
  * A window closes after `window` symbols, judged or not; a thread of the block's own predicts and reports,
  * never holding up the stream. Message port `report` (out): the report as a dict (report_pmt.h), with the
  * settings it was made under as `settings`: set, points, labels, priors …, what `settings_sha256` is the
- * digest of; and as `cloud` (c32vector) up to 256 of the samples that came last, which no log keeps. Message
- * port `input` (in): {es_n0_db, es_n0_db_se, source} ahead of the receiver, from `noise_at` or a meter. The
- * tags `lock` and `pending` of `aligner` are read on input 1.
+ * digest of; and the latest judged samples of the window, at most 256, as `cloud` (c32vector), which views
+ * show and no log keeps. Message port `input` (in): {es_n0_db, es_n0_db_se, source} ahead of the receiver,
+ * from `noise_at` or a meter. The tags `lock` and `pending` of `aligner` are read on input 1.
  *
  * When the flowgraph ends, the open window is closed and reported too: by then every report has been
  * published, and report() is the last one. A `link_log` on the `report` port has written each of them.

@@ -31,7 +31,7 @@ pmt::pmt_t json_to_pmt(const nlohmann::ordered_json& document);
 
 /*!
  * The way back. Fields of bytes (u8vector) and of samples (c32vector) are no part of a report and left out:
- * the log gets the state of a run to keep that way, and views the samples that came last. A time is written
+ * the log gets the state of a run to keep the one way, views get recent samples the other. A time is written
  * with three decimals, or six where three do not say all. An empty object and an absent message are the same
  * PMT (nil) and come back as an empty object. \throws std::invalid_argument on what the table above does not
  * hold (uniform vectors of numbers become arrays)

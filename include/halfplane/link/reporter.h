@@ -9,7 +9,6 @@
 #include <memory>
 #include <optional>
 #include <string>
-#include <vector>
 
 namespace halfplane::link {
 
@@ -51,8 +50,9 @@ public:
     std::optional<report> latest() const;
     /// What watch::carry() says of the run up to the report at hand, as text. From within `on_report` only.
     std::string carry() const;
-    /// What watch::recent() says of the report at hand. From within `on_report` only.
-    const std::vector<std::complex<float>>& recent() const;
+    /// Of the report at hand: the latest samples of its window, at most recent_samples::most. From within
+    /// `on_report` only.
+    const std::vector<std::complex<float>>& recent_samples() const noexcept;
     /// How many were made, and how many windows were merged into a later report because the worker was late.
     std::uint64_t reports() const;
     std::uint64_t merged_windows() const;

@@ -6,6 +6,7 @@
 #include "halfplane/block_counts.h"
 #include "halfplane/gauge.h"
 #include "halfplane/link/aligner.h"
+#include "halfplane/link/recent_samples.h"
 #include "halfplane/link/trial.h"
 #include "halfplane/rates.h"
 #include "halfplane/residuals.h"
@@ -74,9 +75,8 @@ public:
         residual_sums residuals;      ///< empty unless `explain`
         std::optional<tally> decoded; ///< symbols known only by decoding, and the gauge of these
         halfplane::gauge decoded_fit;
-        thinned_samples live;                    ///< of the symbols nobody knows
-        std::vector<std::complex<float>> recent; ///< the last ones, at most 256, as the decision had them
-        block_counts blocks;                     ///< of the run up to the window's end
+        thinned_samples live; ///< of the symbols nobody knows
+        block_counts blocks;  ///< of the run up to the window's end
         second_counts
             seconds;       ///< of the run up to the window's end, complete ones; none without a symbol rate
         trial_state trial; ///< of the run up to the window's end
@@ -90,6 +90,7 @@ public:
         };
         std::vector<input_part> inputs;
         std::optional<input_snr> input; ///< last known
+        recent_samples recent;          ///< for pictures; no part of the report
         void merge(window&& later);
     };
     using window_handler = std::function<void(window&&)>;
@@ -128,10 +129,6 @@ public:
     /// Adds a window to the totals, evaluates the rungs, returns the report; `final` marks it as the run's
     /// last.
     report report_of(window&& w, bool final = false);
-
-    /// Samples of the window that was reported last, at most 256 of its end, as the decision had them: for
-    /// the eye, and no part of the report. For the thread that calls report_of().
-    const std::vector<std::complex<float>>& recent() const;
 
     /// What must be equal for two runs to be one: the document whose digest the report carries.
     nlohmann::json settings() const;

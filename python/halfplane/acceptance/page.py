@@ -120,7 +120,7 @@ class _Page:
         link = basis.of(self.settings)
         if link is None:
             return
-        content = self.figure(views.decision_map({}, self.settings, (520, 570), labels=True), "The set with its labels and decision cells")
+        content = self.figure(views.decision_map({}, self.settings, (520, 570) if link.set.size <= 64 else (720, 770), labels=True), "The set with its labels and decision cells")
         s = link.set
         if s.size <= _MOST_POINTS_LISTED:
             head = "<tr><th scope=col>index</th><th scope=col>label</th><th scope=col>in phase</th><th scope=col>quadrature</th><th scope=col>prior</th></tr>"

@@ -3,10 +3,13 @@
 
 from __future__ import annotations
 
+import json
+
 from gnuradio import gr
 import pmt
 
-from ..report_message import report_of
+from .. import blocks_python
+from ..views.cloud import with_cloud
 from .guard import OWN_ADDRESS
 from .server import Server
 
@@ -56,6 +59,6 @@ class link_page(gr.basic_block):  # noqa: N801 (blocks are named as the host nam
 
     def _take(self, message) -> None:
         try:
-            self._server.publish(report_of(message))
+            self._server.publish(with_cloud(json.loads(blocks_python.pmt_to_json(message)), message))
         except Exception as error:  # an exception here would end this block's thread
             self.logger.error(f"a message on `report` is no report: {error}")

@@ -10,8 +10,9 @@ const VIEWS = {
   curve: "Error rate against Es/N0",
   account: "Account and verdict",
 };
-const LAYERS = { decision_map: ["labels", "samples"] };
 const THEMES = ["system", "light", "dark"];
+// Layers of the decision map, each with its button, and whether they are shown at first.
+const LAYERS = { labels: "off", samples: "on" };
 const NARROW = matchMedia("(max-width: 519px)");
 const STALE_SECONDS = 5;
 
@@ -36,16 +37,6 @@ function element(name, className, text = "") {
   return made;
 }
 
-// The server draws what is shown on demand in layers; the style sheet hides them until asked for.
-function layerButton(figure, layer) {
-  const button = element("button", "", layer[0].toUpperCase() + layer.slice(1));
-  button.type = "button";
-  button.dataset.layer = layer;
-  button.setAttribute("aria-pressed", "false");
-  button.addEventListener("click", () => button.setAttribute("aria-pressed", String(figure.classList.toggle(layer))));
-  return button;
-}
-
 function buildViews() {
   for (const [name, title] of Object.entries(VIEWS)) {
     const figure = document.createElement("figure");
@@ -53,9 +44,8 @@ function buildViews() {
     const head = document.createElement("div");
     const heading = element("h2", "", title);
     heading.id = `${name}-title`;
-    const enlarge = element("button", "", "Enlarge");
+    const enlarge = element("button", "enlarge", "Enlarge");
     enlarge.type = "button";
-    enlarge.className = "enlarge";
     enlarge.setAttribute("aria-pressed", "false");
     enlarge.setAttribute("aria-label", `Enlarge: ${title}`);
     enlarge.addEventListener("click", () => {
@@ -63,11 +53,29 @@ function buildViews() {
       enlarge.setAttribute("aria-pressed", String(large));
       figure.scrollIntoView({ block: "nearest" });
     });
-    head.append(heading, ...(LAYERS[name] || []).map((layer) => layerButton(figure, layer)), enlarge);
+    head.append(heading, ...(name === "decision_map" ? layerButtons(figure) : []), enlarge);
     figure.setAttribute("aria-labelledby", heading.id);
     figure.append(head, element("div", "empty", "No picture yet"));
     byId("views").append(figure);
   }
+}
+
+function layerButtons(figure) {
+  return Object.entries(LAYERS).map(([layer, first]) => {
+    const button = element("button", "", layer[0].toUpperCase() + layer.slice(1));
+    button.type = "button";
+    button.id = `show-${layer}`;
+    const show = (state) => {
+      figure.dataset[layer] = state;
+      button.setAttribute("aria-pressed", String(state === "on"));
+    };
+    button.addEventListener("click", () => {
+      show(figure.dataset[layer] === "on" ? "off" : "on");
+      keep(layer, figure.dataset[layer]);
+    });
+    show(kept(layer, ["on", "off"], first));
+    return button;
+  });
 }
 
 function showView(name, text) {
@@ -135,24 +143,28 @@ function connect() {
 function setTheme(theme) {
   document.documentElement.dataset.theme = theme;
   byId("theme").textContent = `Colours: ${theme}`;
+  keep("colours", theme);
+}
+
+function keep(name, value) {
   try {
-    localStorage.setItem("colours", theme);
+    localStorage.setItem(name, value);
   } catch {
-    // A browser that keeps nothing still shows them.
+    // A browser that keeps nothing still shows it.
   }
 }
 
-function keptTheme() {
+function kept(name, values, first) {
   try {
-    const kept = localStorage.getItem("colours");
-    return THEMES.includes(kept) ? kept : "system";
+    const found = localStorage.getItem(name);
+    return values.includes(found) ? found : first;
   } catch {
-    return "system";
+    return first;
   }
 }
 
 buildViews();
-setTheme(keptTheme());
+setTheme(kept("colours", THEMES, "system"));
 byId("theme").addEventListener("click", () => setTheme(THEMES[(THEMES.indexOf(document.documentElement.dataset.theme) + 1) % THEMES.length]));
 byId("pause").addEventListener("click", () => {
   held = !held;

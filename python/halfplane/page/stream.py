@@ -10,7 +10,6 @@ import time
 
 from .. import views
 from ..views.board import Board
-from ..views.drawing import LAYERS
 from ..views.pace import Pace
 
 # Room for a drawing on the page, in CSS pixels at 100 %, by the layout that a client asks for.
@@ -130,7 +129,7 @@ class Studio:
 
     def _drawn(self, name: str, layout: str) -> bytes | None:
         try:
-            return event(name, views.render(self._board.draw(name, LAYOUTS[layout][name], LAYERS), "page"))
+            return event(name, views.render(self._board.draw(name, LAYOUTS[layout][name], labels=True), "page"))
         except Exception:  # whatever a report may hold, the others are drawn
             if name not in self._failed:
                 self._failed.add(name)

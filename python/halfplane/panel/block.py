@@ -3,11 +3,14 @@
 
 from __future__ import annotations
 
+import json
+
 from PyQt5 import QtWidgets  # before pyqtgraph, or it picks another Qt
 from gnuradio import gr
 import pmt
 
-from ..report_message import report_of
+from .. import blocks_python
+from ..views.cloud import with_cloud
 from .widget import Panel
 
 
@@ -44,11 +47,15 @@ class link_panel(gr.basic_block, QtWidgets.QWidget):  # noqa: N801 (blocks are n
             state = _lock_state(message)
             if state != self._lock_state:
                 self._lock_state = state
-                self.panel.publish(report_of(message))
+                self.panel.publish(_as_report(message))
             else:
-                self.panel.offer(lambda: report_of(message))
+                self.panel.offer(lambda: _as_report(message))
         except Exception as error:
             self.logger.error(f"a message on `report` is no report: {error}")
+
+
+def _as_report(message) -> dict:
+    return with_cloud(json.loads(blocks_python.pmt_to_json(message)), message)
 
 
 def _lock_state(message) -> str:

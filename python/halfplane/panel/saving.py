@@ -4,7 +4,6 @@
 from __future__ import annotations
 
 import json
-from collections.abc import Collection
 from pathlib import Path
 
 from ..views import render
@@ -23,14 +22,14 @@ _ROWS = (
 )
 
 
-def sheet(board: Board, layers: Collection[str] = ()) -> Drawing:
+def sheet(board: Board) -> Drawing:
     """All views on one drawing."""
     out = Drawing("sheet", _WIDTH + 2 * _GAP, 0.0, title="The link in all views")
     y, said = _GAP, []
     for row in _ROWS:
         x, lowest = _GAP, y
         for name, width, height in row:
-            drawn = board.draw(name, (width, height), layers)
+            drawn = board.draw(name, (width, height))
             out.place(drawn, x, y)
             said.append(drawn.description)
             x += width + _GAP
@@ -40,15 +39,15 @@ def sheet(board: Board, layers: Collection[str] = ()) -> Drawing:
     return out
 
 
-def picture(board: Board, path: str, theme: str, layers: Collection[str] = ()) -> None:
+def picture(board: Board, path: str, theme: str) -> None:
     """As PNG (two pixels a unit) or SVG, by the ending."""
     ending = Path(path).suffix.lower()
     if ending == ".svg":
-        Path(path).write_text(render(sheet(board, layers), theme), encoding="utf-8")
+        Path(path).write_text(render(sheet(board), theme), encoding="utf-8")
     elif ending == ".png":
         from ..views import qt
 
-        if not qt.image(sheet(board, layers), theme).save(path):
+        if not qt.image(sheet(board), theme).save(path):
             raise OSError(f"{path}: the picture cannot be written")
     else:
         raise ValueError(f"{path}: a picture ends in .png or .svg")

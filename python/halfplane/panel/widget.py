@@ -4,7 +4,6 @@
 from __future__ import annotations
 
 import collections
-import functools
 import logging
 import math
 import time
@@ -14,7 +13,6 @@ from PyQt5 import QtCore, QtGui, QtWidgets  # before pyqtgraph, or it picks anot
 
 from ..views import themes
 from ..views.board import Board
-from ..views.drawing import LAYERS
 from ..views.pace import Pace
 from . import saving
 from .canvas import FRAME, Canvas
@@ -56,8 +54,7 @@ class Panel(QtWidgets.QWidget):
         self._told = False  # a signal is under way
         self._unseen: set[str] = set()  # what was not drawn because nobody could see it
         self._columns = 0
-        self._layers: set[str] = set()  # what is shown on demand
-        self._layer_buttons: dict[str, QtWidgets.QPushButton] = {}
+        self._layers: dict[str, QtWidgets.QPushButton] = {}  # of the decision map
         self._canvases = {name: Canvas(name, self._pace.charge, time.thread_time) for name in ("heading", *_HEIGHTS)}
         self._build()
         self._came.connect(self._note_news, QtCore.Qt.QueuedConnection)
@@ -104,7 +101,7 @@ class Panel(QtWidgets.QWidget):
 
     def save_picture(self, path: str) -> None:
         """All views as they would be drawn now, as PNG or SVG. ValueError or OSError say what is wrong."""
-        saving.picture(self.board, path, self.theme, self._layers)
+        saving.picture(self.board, path, self.theme)
 
     def save_report(self, path: str) -> None:
         """An acceptance report (.html), or the latest report with its settings (.json). ValueError or OSError say what is wrong."""
@@ -131,18 +128,18 @@ class Panel(QtWidgets.QWidget):
             button.setToolTip({"&Colours": "Light or dark"}.get(text, f"Save a {text[1:].lower()}") + f" ({key})")
             button.clicked.connect(action)
             self._bar.addWidget(button)
-        self._map_tools = QtWidgets.QWidget()  # above the decision map
-        layers = QtWidgets.QHBoxLayout(self._map_tools)
-        layers.setContentsMargins(0, 0, 0, 0)
-        layers.addStretch(1)
-        for layer, text, key in (("labels", "&Labels", "Ctrl+L"), ("samples", "&Samples", "Ctrl+D")):
-            button = QtWidgets.QPushButton(text)
+        self._map_bar = QtWidgets.QWidget()
+        row = QtWidgets.QHBoxLayout(self._map_bar)
+        row.setContentsMargins(0, 0, 0, 0)
+        row.addStretch(1)
+        for name, text, key, shown in (("labels", "&Labels", "Ctrl+L", False), ("samples", "Sa&mples", "Ctrl+M", True)):
+            button = self._layers[name] = QtWidgets.QPushButton(text)
             button.setCheckable(True)
+            button.setChecked(shown)
             button.setShortcut(key)
-            button.setToolTip(f"{text[1:]} in the decision map ({key})")
-            button.toggled.connect(functools.partial(self.show_layer, layer))
-            layers.addWidget(button)
-            self._layer_buttons[layer] = button
+            button.setToolTip(f"Decision map: {name} on or off ({key})")
+            button.toggled.connect(lambda *_: self._draw("decision_map"))
+            row.addWidget(button)
         self._grid = QtWidgets.QHBoxLayout()
         self._grid.setSpacing(_GAP)
         inside = QtWidgets.QWidget()
@@ -184,7 +181,10 @@ class Panel(QtWidgets.QWidget):
                 self._grid.addLayout(column, 1)
                 for name in names:
                     if name == "decision_map":
-                        column.addWidget(self._map_tools)
+                        column.addWidget(self._map_bar)
+                        for button in self._layers.values():
+                            QtWidgets.QWidget.setTabOrder(before, button)
+                            before = button
                     column.addWidget(self._canvases[name])
                     QtWidgets.QWidget.setTabOrder(before, self._canvases[name])
                     before = self._canvases[name]
@@ -252,7 +252,8 @@ class Panel(QtWidgets.QWidget):
         width, height = self._width_of(name), float(_HEIGHTS.get(name, 92))
         if name == "decision_map":  # a plane: no higher than it is wide
             height = min(height, width + 60)
-        self._canvases[name].show_drawing(self.board.draw(name, (width, height), self._layers), self.theme)
+        shown = {layer: button.isChecked() for layer, button in self._layers.items()}
+        self._canvases[name].show_drawing(self.board.draw(name, (width, height), **shown), self.theme)
         if name == "heading":
             report = self.board.latest()[0]
             title = "  ".join(filter(None, (report.get("set", "Link"), report.get("pattern", ""))))
@@ -265,7 +266,7 @@ class Panel(QtWidgets.QWidget):
             f"QWidget#inside, QScrollArea {{ background: {shown['ground']}; }}"
             f"QLabel#title {{ color: {shown['ink']}; font-weight: 600; font-size: 16px; }}"
             f"QPushButton {{ font-size: 12px; color: {shown['ink']}; background: {shown['raised']}; border: 1px solid {shown['rule']}; border-radius: 4px; padding: 4px 11px; }}"
-            f"QPushButton:checked {{ background: {shown['exact']}; color: {shown['ground']}; border-color: {shown['exact']}; }}"
+            f"QPushButton:checked {{ color: {shown['ground']}; background: {shown['exact']}; }}"
             f"QPushButton:hover {{ border-color: {shown['quiet']}; }}"
             f"QPushButton:focus {{ border: 2px solid {shown['exact']}; padding: 3px 10px; }}"
             f"QGraphicsView {{ border: 1px solid {shown['rule']}; background: {shown['ground']}; }}"
@@ -274,14 +275,6 @@ class Panel(QtWidgets.QWidget):
             f"QScrollBar::add-line, QScrollBar::sub-line {{ height: 0; }}"
             f"QGraphicsView:focus {{ border: 2px solid {shown['exact']}; }}"
         )
-
-    def show_layer(self, layer: str, shown: bool) -> None:
-        """Labels or samples in the decision map, or not. ValueError where it is neither."""
-        if layer not in LAYERS:
-            raise ValueError(f"layer is {layer!r}: one of {', '.join(LAYERS)} is wanted")
-        (self._layers.add if shown else self._layers.discard)(layer)
-        self._layer_buttons[layer].setChecked(shown)
-        self._draw("decision_map")
 
     def _next_theme(self) -> None:
         self.set_theme("light" if self.theme == "dark" else "dark")

@@ -4,10 +4,8 @@
 from __future__ import annotations
 
 import threading
-from collections.abc import Collection, Sequence
 
 from . import glance
-from .decision_map import decision_map
 from .drawing import Drawing
 from .history import history as draw_history
 from .trace import Trace
@@ -20,21 +18,21 @@ class Board:
         self._lock = threading.Lock()
         self._report: dict = {}
         self._settings: dict | None = None
-        self._cloud: Sequence[complex] = ()
+        self._cloud: tuple = ()
         self._digest: str | None = None
         self._trace = Trace()
         self._taken = 0
 
     def put(self, report: dict) -> None:
         """
-        A report, with the `settings` that travel with it or without, and the latest samples as `cloud`. Settings stay known as long as the reports name the
+        A report, with the `settings` and the `cloud` (recent samples) that travel with it or without. Settings stay known as long as the reports name the
         same digest. Raises TypeError or ValueError on what is no report and then keeps what it had.
         """
         if not isinstance(report, dict) or not isinstance(report.get("total", {}), dict):
             raise ValueError("a report is wanted, an object with counts under `total`")
         report = dict(report)
         settings, digest = report.pop("settings", None), report.get("settings_sha256")
-        cloud = report.pop("cloud", ())
+        cloud = tuple(map(complex, report.pop("cloud", ())))
         with self._lock:
             self._trace.add(report)
             if settings is not None:
@@ -42,7 +40,8 @@ class Board:
             elif digest != self._digest:
                 self._settings = None
             self._digest = digest
-            self._report, self._cloud = report, cloud
+            self._cloud = cloud
+            self._report = report
             self._taken += 1
 
     @property
@@ -58,8 +57,8 @@ class Board:
     def answers(self) -> tuple[glance.Answer, ...]:
         return glance.answers(self.latest()[0])
 
-    def draw(self, view: str, size: tuple[float, float], layers: Collection[str] = ()) -> Drawing:
-        """A view of what is held, by its name in VIEWS; of the decision map with these of drawing.LAYERS."""
+    def draw(self, view: str, size: tuple[float, float], labels: bool = False, samples: bool = True) -> Drawing:
+        """A view of what is held, by its name in VIEWS. labels, samples: whether the decision map shows them."""
         from . import VIEWS
 
         report, settings = self.latest()
@@ -67,7 +66,5 @@ class Board:
             with self._lock:
                 return draw_history(self._trace, settings, size)
         if view == "decision_map":
-            with self._lock:
-                cloud = self._cloud
-            return decision_map(report, settings, size, labels="labels" in layers, cloud=cloud if "samples" in layers else None)
+            return VIEWS[view](report, settings, size, labels, self._cloud if samples else None)
         return VIEWS[view]([report] if view == "curve" else report, settings, size)

@@ -16,7 +16,9 @@ SIZE = (560.0, 600.0)
 CHANCE = 0.01
 _LEFT, _RIGHT, _TOP = 46.0, 14.0, 10.0
 _MOST_DOTS = 2000
-_LEAST_LETTERS = 4.0  # below, nobody reads them
+LABELS, SAMPLES = "labels", "samples"  # layers of the drawing
+# Smallest letters of labels, in units; smaller ones nobody reads.
+_LEAST_LETTERS = 6.0
 _ENTRIES = [
     legend.Entry("swatch", "fewer", "fewer errors than expected", strength=0.55, sign="minus"),
     legend.Entry("swatch", "even", "as expected", sign="circle"),
@@ -28,8 +30,9 @@ def decision_map(
     report: dict, settings: dict | None, size: tuple[float, float] = SIZE, labels: bool = False, cloud=None
 ) -> Drawing:
     """
-    labels: write each point's bits (up to 256 points), in a layer of that name; where they do not fit, that is said instead.
-    cloud: recent samples as the decision had them, complex, in the set's unit; the latest 2,000 are drawn, in the layer `samples`. Tiles of sets of more than 256 points are plain: reports count no transitions for them.
+    labels: write each point's bits; where they cannot be read at this size, the map says so instead. cloud: recent corrected
+    samples, complex, in the set's unit; the latest 2,000 are drawn. Both are layers of their own. Tiles of sets of more than
+    256 points are plain: reports count no transitions for them.
     """
     out = Drawing("decision_map", *size, title="Decision cells, and errors against expectation")
     link = basis.of(settings)
@@ -50,11 +53,15 @@ def decision_map(
     plane.draw_axes(out)
     if cloud is not None and len(cloud):
         dots = [(plane.x(y.real), plane.y(y.imag)) for y in list(cloud)[-_MOST_DOTS:]]
-        out.add(Cloud(tuple(dot for dot in dots if plane.holds(*dot)), "ink", 1.6, 0.3, layer="samples"))
+        out.add(Cloud(tuple(dot for dot in dots if plane.holds(*dot)), "ink", 2.4, 0.5, SAMPLES))
     if detailed:
         _draw_arrows(out, link, plane, total, dispersion, clear)
-    _draw_points(out, link, plane, errors, dispersion, clear, labels)
+    letters = _letters(link, plane) if labels else 0.0
+    _draw_points(out, link, plane, errors, dispersion, clear, letters if detailed and letters >= _LEAST_LETTERS else 0.0)
     _draw_legend(out, link, total, entries)
+    if labels and not (detailed and letters >= _LEAST_LETTERS):
+        said = f"{words.count(link.set.size)} labels are too many to be read at this size"
+        out.add(Text(out.width / 2, _TOP + 15, said, "ink", 11, "middle", bold=True, halo=True, layer=LABELS))
     out.description = _description(link, total, said)
     return out
 
@@ -138,24 +145,23 @@ def _expected(value: float) -> str:
     return words.count(value) if value >= 100 else f"{value:.3g}"
 
 
-def _say_of_labels(out: Drawing, plane: _Plane, text: str) -> None:
-    x, y, width, _ = plane.box
-    out.add(Text(x + width / 2, y + 15, text, "ink", 11, "middle", halo=True, layer="labels"))
+def _sign(room: float) -> float:
+    return min(11.0, max(5.0, 0.3 * room))
 
 
-def _draw_points(out: Drawing, link, plane: _Plane, errors, dispersion: float, clear: float, labels: bool) -> None:
+def _letters(link, plane: _Plane) -> float:
+    """Size of letters at which a label fits between its point's sign and the neighbours."""
+    room = plane.scale * link.set.d_min
+    return min(11.0, 0.8 * room / max(1.0, lettering.width(link.set.label_strings[0], 1.0)), 0.28 * room)
+
+
+def _draw_points(out: Drawing, link, plane: _Plane, errors, dispersion: float, clear: float, letters: float) -> None:
     points, names = link.set.points, link.set.label_strings
     room = plane.scale * link.set.d_min
     if link.set.size > basis.MOST_POINTS_IN_DETAIL:
-        if labels:
-            _say_of_labels(out, plane, f"labels are written up to {basis.MOST_POINTS_IN_DETAIL} points")
         out.add(Cloud(tuple((plane.x(p.real), plane.y(p.imag)) for p in points), "ink", max(1.0, min(2.4, 0.25 * room)), 0.9))
         return
-    sign = min(11.0, max(5.0, 0.3 * room))
-    letters = min(11.0, 0.8 * room / max(1.0, lettering.width(names[0], 1.0)), 0.28 * room)
-    if labels and letters < _LEAST_LETTERS:
-        labels = False
-        _say_of_labels(out, plane, "labels do not fit at this size")
+    sign = _sign(room)
     for i, point in enumerate(points):
         x, y = plane.x(point.real), plane.y(point.imag)
         off = basis.deviation(errors[0][i], errors[1][i], dispersion) if errors is not None else 0.0
@@ -163,8 +169,8 @@ def _draw_points(out: Drawing, link, plane: _Plane, errors, dispersion: float, c
             out.add(Mark(x, y, "plus" if off > 0 else "minus", "ink", sign, note=names[i]))
         else:
             out.add(Mark(x, y, "circle", "ink", min(4.5, 0.16 * room), note=names[i]))
-        if labels:
-            out.add(Text(x, y + sign / 2 + letters + 1, names[i], "ink", letters, "middle", halo=True, layer="labels"))
+        if letters:
+            out.add(Text(x, y + sign / 2 + letters + 1, names[i], "ink", letters, "middle", halo=True, layer=LABELS))
 
 
 def _draw_arrows(out: Drawing, link, plane: _Plane, total: dict, dispersion: float, clear: float) -> None:

@@ -45,7 +45,6 @@ STROKES = {
     "plus": ((-1, 0, 1, 0), (0, -1, 0, 1)),
     "minus": ((-1, 0, 1, 0),),
 }
-LAYERS = ("labels", "samples")
 SHAPES = ("circle", "ring", *CORNERS, *STROKES)
 
 
@@ -134,7 +133,7 @@ class Mark:
 
 @dataclass(frozen=True)
 class Cloud:
-    """Many dots of one role. layer, here and of Text: what a live view shows on demand, one of LAYERS; "": always."""
+    """Many dots of one role. layer, here and of Text: what a page may show and hide by itself (svg.py); "" for what is always shown."""
 
     points: tuple[tuple[float, float], ...]
     role: str = "quiet"

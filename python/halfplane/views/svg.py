@@ -19,7 +19,8 @@ def render(drawing: Drawing, theme: str = "light", key: str = "") -> str:
 
     theme: "light" or "dark" write the colours out: a file of its own, or for a converter that knows no CSS. "page" names
     them by CSS custom properties, for a page that carries themes.stylesheet(); there the one SVG follows the page's
-    theme, and no style attribute stands in it, so that a strict content security policy may hold.
+    theme, and no style attribute stands in it, so that a strict content security policy may hold. What is of a layer has the
+    class hp-LAYER.
 
     key: told apart by it are drawings on one page that say the same (ids must not stand twice).
     """
@@ -134,9 +135,8 @@ def _mark(item: Mark, palette: Palette, key: str):
         yield _element("polygon", {"points": _points(corners), "fill": colour}, item.note)
 
 
-def _layer(item: Cloud | Text) -> str | None:
-    """A class by which a page's style sheet hides and shows it."""
-    return f"layer-{item.layer}" if item.layer else None
+def _class(item: Cloud | Text) -> str | None:
+    return f"hp-{item.layer}" if item.layer else None
 
 
 def _cloud(item: Cloud, palette: Palette, key: str):
@@ -147,7 +147,7 @@ def _cloud(item: Cloud, palette: Palette, key: str):
             "path",
             {
                 "d": path, "stroke": palette(item.role), "stroke-width": _n(item.size), "stroke-linecap": "round",
-                "stroke-opacity": _n(item.strength), "fill": "none", "class": _layer(item),
+                "stroke-opacity": _n(item.strength), "fill": "none", "class": _class(item),
             },
         )  # fmt: skip
 
@@ -159,7 +159,7 @@ def _text(item: Text, palette: Palette, key: str):
         "font-size": _n(item.size),
         "text-anchor": item.anchor if item.anchor != "start" else None,
         "font-weight": "600" if item.bold else None,
-        "class": _layer(item),
+        "class": _class(item),
     }
     content = escape(item.text)
     if item.halo:
