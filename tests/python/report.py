@@ -290,3 +290,31 @@ def test_memory_does_not_grow_with_the_log(tmp_path):
 
 def test_overall_is_the_worst():
     assert acceptance.overall(["pass"]) == "pass" and acceptance.overall(["pass", "undecided", "fail"]) == "fail"
+
+
+@pytest.mark.parametrize("name", ["live", "partly", "full"])
+def test_what_was_not_known_in_advance_stands_apart(tmp_path, name):
+    report = {**getattr(sample_reports, name)(), "schema": source.REPORT, "sequence": 0, "settings_sha256": sample_logs.DIGEST}
+    log = sample_logs.write(tmp_path / "link.jsonl", sample_logs.settings_line(), report)
+    assert halfplane("report", log, "--out", tmp_path / "link.html").returncode in (0, 3)
+    table = re.search(r"<caption>Live traffic.*?</table>", (tmp_path / "link.html").read_text())
+    assert (table is None) == (name == "full")
+    if table:
+        said, total = unescape(table[0]), report["total"]
+        live = total["live_part"]
+        assert words.count(live["symbols"]) in said and words.gauged(live) in said and words.rate(live["predicted"]["exact"]["ser"]) in said
+        assert said.count("cannot be counted") == 1
+        assert ("known by decoding alone</td>" in said) == ("decoded_part" in total)
+
+
+@pytest.mark.parametrize("part, said", [
+    ({"live": -1}, '"total.live" is no count'), ({"live_part": 3}, '"total.live_part" is no object'),
+    ({"decoded_part": {"ser": "x"}}, '"total.decoded_part" is no object'), ({"live_part": {"predicted": 1}}, '"total.live_part" is no object'),
+    ({"live_part": {"predicted": {"exact": {"ser": None}}}}, '"total.live_part.predicted" holds'),
+])  # fmt: skip
+def test_parts_that_make_no_sense_are_refused(part, said):
+    report = {**sample_reports.live(), "schema": source.REPORT}
+    source.of_message(report)
+    report["total"] = {**report["total"], **part}
+    with pytest.raises(source.LogError, match=said):
+        source.of_message(report)

@@ -88,7 +88,7 @@ class _Page:
 
     def measured(self):
         content = "".join(_rates_table(self.reports, kind, self.against) for kind in ("ser", "ber"))
-        content += _shortfall_table(self.reports, self.against)
+        content += _shortfall_table(self.reports, self.against) + _apart_table(self.reports)
         if self.against is not None:
             stored = self.document["against"]
             job = f" ({stored['job']})" if "job" in stored else ""
@@ -201,6 +201,26 @@ def _rates_table(reports, kind: str, against) -> str:
         rows += f"<tr>{_cells(values)}</tr>"
     caption = words.KINDS[kind].capitalize()
     return f'<table class="numbers"><caption>{caption}</caption><thead>{_head(columns)}</thead><tbody>{rows}</tbody></table>\n'
+
+
+def _apart_table(reports) -> str:
+    """Live traffic and what is known only by decoding: neither is among the symbols judged. "" where there is none of either."""
+    rows = ""
+    for k, report in enumerate(reports):
+        total = report.get("total", {})
+        live, decoded = total.get("live_part", {}), total.get("decoded_part", {})
+        for what, part, errors in (
+            ("live, gauged blindly", live, "cannot be counted"),
+            ("known by decoding alone", decoded, words.count(decoded.get("symbol_errors", 0)) + "; frames that failed are missing"),
+        ):  # fmt: skip
+            if part.get("symbols"):
+                predicted = part.get("predicted", {}).get("exact", {})
+                values = [str(k + 1), what, words.count(part["symbols"]), words.gauged(part), words.rate(predicted.get("ser")), words.rate(predicted.get("ber")), errors]
+                rows += f"<tr>{_cells(values)}</tr>"
+    if not rows:
+        return ""
+    columns = ["point", "symbols not judged", "number", "Es/N0", "SER predicted", "BER predicted", "symbol errors"]
+    return f'<table class="numbers"><caption>Live traffic, and what is known by decoding alone</caption><thead>{_head(columns)}</thead><tbody>{rows}</tbody></table>\n'
 
 
 def _shortfall_table(reports, against) -> str:

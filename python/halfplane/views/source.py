@@ -21,7 +21,7 @@ from .trace import Trace
 REPORT, SETTINGS = "halfplane/report/1", "halfplane/settings/1"
 _DICTS = ("window", "total", "input", "shortfall", "lock", "seconds", "verdict")
 _LISTS = ("losses", "premises")
-_COUNTS = ("symbols", "symbol_errors", "bits", "bit_errors", "in", "judged", "pending", "nonfinite", "slips", "first_symbol")
+_COUNTS = ("symbols", "symbol_errors", "bits", "bit_errors", "in", "judged", "pending", "nonfinite", "slips", "first_symbol", "live", "decoded")
 _NUMBERS = ("p", "effect_db", "power_db", "cost_db")
 # What must be one and the same in all that one acceptance report speaks of.
 _COMMON = ("set", "pattern", "law", "detector", "decisions", "confidence")
@@ -119,6 +119,8 @@ class Reader:
         for key, value in numbers:
             if not _is_number(value):
                 raise self._error(f'"{key}" is no number: {value!r}')
+        for part, key in itertools.product(("total", "window"), ("live_part", "decoded_part")):
+            self._check_part(f"{part}.{key}", report.get(part, {}).get(key, {}))
         for part in ("total", "window"):
             for rung, figures in _dict(report.get(part, {}).get("predicted")).items():
                 if not isinstance(figures, dict) or not all(map(_is_number, figures.values())):
@@ -126,6 +128,14 @@ class Reader:
         for place, fall in report.get("shortfall", {}).items():
             if not isinstance(fall, dict) or not all(map(_is_number, fall.values())):
                 raise self._error(f'"shortfall.{place}" is no object of numbers')
+
+    def _check_part(self, name: str, part) -> None:
+        """Symbols that were not known in advance: numbers, and as `predicted` rungs of numbers."""
+        rungs = part.get("predicted", {}) if isinstance(part, dict) else None
+        if not isinstance(rungs, dict) or not all(_is_number(value) for key, value in part.items() if key != "predicted"):
+            raise self._error(f'"{name}" is no object of numbers')
+        if not all(isinstance(figures, dict) and all(map(_is_number, figures.values())) for figures in rungs.values()):
+            raise self._error(f'"{name}.predicted" holds no objects of numbers')
 
     def _checked_settings(self, settings: dict) -> dict:
         points, labels = settings.get("points", []), settings.get("labels", [])
