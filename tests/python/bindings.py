@@ -96,6 +96,18 @@ def test_intervals_against_scipy():
     assert halfplane.binomial_interval(0, 10)[0] is None
 
 
+def test_live_traffic_is_gauged_blindly():
+    rng = np.random.default_rng(4)
+    points = np.array(SET.points)
+    noise = np.sqrt(SET.es / 10**1.4 / 2) * (rng.normal(size=50000) + 1j * rng.normal(size=50000))
+    found = halfplane.gauge_blindly(SET, 3 * (rng.choice(points, 50000, p=SET.priors) + noise))
+    assert abs(found.es_n0_db - 14) < 4.5 * found.es_n0_db_se < 0.2
+    assert abs(found.gain / 3 - 1) < 0.01 and 16384 <= found.samples <= 32768
+    assert halfplane.gauge_blindly(SET, points[:10]) is None
+    with pytest.raises(ValueError, match="received sample 1 is not finite"):
+        halfplane.gauge_blindly(SET, [1, np.nan])
+
+
 def test_tally_and_gauge_against_numpy():
     rng = np.random.default_rng(2026)
     sent = halfplane.pattern("draw:2026", SET).indices(0, 20000)

@@ -2,6 +2,7 @@
 // Bindings of what is counted on a link: intervals, tally, gauge, pattern.
 #include "topics.h"
 
+#include "halfplane/blind_gauge.h"
 #include "halfplane/gauge.h"
 #include "halfplane/interval.h"
 #include "halfplane/pattern.h"
@@ -172,6 +173,50 @@ void bind_gauge(py::module_& m)
              "A gauge_result; None with fewer than 3 symbols, one point only, or no noise.");
 }
 
+/// Of a whole array; what is not finite has no place in a likelihood.
+std::optional<blind_result> gauged_blindly(const signal_set& set, const complexes& received)
+{
+    const std::vector<std::complex<float>> r(received.data(), received.data() + received.size());
+    for (std::size_t k = 0; k < r.size(); ++k)
+        if (!std::isfinite(r[k].real()) || !std::isfinite(r[k].imag()))
+            throw std::invalid_argument("received sample " + std::to_string(k) + " is not finite");
+    py::gil_scoped_release free;
+    thinned_samples thinned;
+    thinned.add(r.data(), 0, r.size());
+    return blind_gauge(set).solve(thinned.kept());
+}
+
+void bind_blind_gauge(py::module_& m)
+{
+    py::class_<blind_result>(
+        m,
+        "blind_result",
+        "Maximum likelihood over the mixture of all points: r = gain·s + offset + e, s unknown.")
+        .def_readonly("gain",
+                      &blind_result::gain,
+                      "Complex; of the turns that carry the set into itself the one nearest to angle 0.")
+        .def_readonly("offset", &blind_result::offset, "Complex.")
+        .def_readonly("n0", &blind_result::n0, "Noise variance, complex.")
+        .def_property_readonly("es_n0_db", [](const blind_result& r) { return 10 * std::log10(r.es_n0); })
+        .def_readonly("es_n0_db_se",
+                      &blind_result::es_n0_db_se,
+                      "Standard error of es_n0_db, from the observed information.")
+        .def_readonly("samples", &blind_result::samples, "Samples that the likelihood was taken over.");
+    m.def(
+        "gauge_blindly",
+        &gauged_blindly,
+        py::arg("set"),
+        py::arg("received"),
+        R"doc(Gain, offset, noise and Es/N0 of live traffic, where nobody knows what was sent: a blind_result.
+
+received: finite complex samples, one a symbol, of any gain, near the right phase; of more than 32,768 a part is taken,
+evenly and without a period. Points are taken to be sent by their priors, noise to be Gaussian. With 20,000 samples and a
+symbol error rate up to 0.3 the bias is below 0.05 dB and the variance within 1.2 times the Cramér-Rao bound.
+
+None with fewer than 100 samples, without noise, or where the standard error is beyond 3 dB. ValueError where a sample is
+not finite.)doc");
+}
+
 void bind_pattern(py::module_& m)
 {
     py::class_<pattern>(m, "pattern", R"(A periodic sequence of indices that both ends of a link know.
@@ -202,6 +247,7 @@ void bind_measures(py::module_& m)
     bind_intervals(m);
     bind_tally(m);
     bind_gauge(m);
+    bind_blind_gauge(m);
     bind_pattern(m);
 }
 
