@@ -224,6 +224,26 @@ def test_with_a_token_the_page_and_its_stream_work(browser):
         assert status == 401
 
 
+def test_logs_put_aside_are_offered(browser, tmp_path):
+    log = tmp_path / "link.jsonl"
+    for number in ("", ".1", ".2"):
+        (tmp_path / f"link.jsonl{number}").write_text("{}\n")
+    with serving(token=TOKEN, log=str(log)) as server:
+        server.publish(FULL)
+        look(browser, (1024, 768), "light")
+        open_page(browser, server, f"?token={TOKEN}")
+        browser.find_element("css selector", "#logs summary").send_keys(Keys.ENTER)
+        wait_for(browser, "document.querySelectorAll('#logs a').length === 2")
+        found = browser.execute_async_script("const done = arguments[0]; Promise.all([...document.querySelectorAll('#logs a')].map((a) => fetch(a.href).then((r) => [a.textContent, r.status]))).then(done)")
+        assert found == [["link.jsonl.1 (3 bytes)", 200], ["link.jsonl.2 (3 bytes)", 200]]
+        assert browser.get_log("browser") == []
+        assert browser.execute_script("return document.documentElement.scrollWidth <= innerWidth")
+    with serving() as server:  # no log, no list
+        server.publish(FULL)
+        open_page(browser, server)
+        assert not browser.find_element("id", "logs").is_displayed()
+
+
 def test_names_in_a_report_are_words_and_nothing_else(browser, server):
     """A set's name may be anything; it never becomes markup, here or in a drawing."""
     nasty = '<img src=x onerror="document.title=1">"\'&</svg><script>document.title=2</script>'

@@ -4,6 +4,7 @@
 import asyncio
 import contextlib
 import json
+import os
 import socket
 import sys
 import threading
@@ -139,6 +140,33 @@ def test_the_log_is_what_stands_in_the_file(tmp_path, server):
         status, headers, body = get(other, "/log")
         assert status == 200 and body == log.read_bytes()
         assert headers["Content-Disposition"] == 'attachment; filename="fi_rn.jsonl"'
+
+
+def test_logs_put_aside_are_listed_and_offered_by_number(tmp_path, server):
+    """And nothing else of the directory, whatever is asked for."""
+    log = tmp_path / "link.jsonl"
+    for name, text in (("link.jsonl", "now"), ("link.jsonl.1", "first"), ("link.jsonl.2", "2nd"), ("link.jsonl.10", "tenth"), ("link.jsonl.carry", "secret"),
+                       ("link.jsonl.01", "secret"), ("link.jsonl.1.txt", "secret"), ("other", "secret")):  # fmt: skip
+        (tmp_path / name).write_text(text)
+    (tmp_path / "link.jsonl.3").symlink_to(tmp_path / "other")
+    os.mkfifo(tmp_path / "link.jsonl.4")
+    (tmp_path / "link.jsonl.5").mkdir()
+    assert json.loads(get(server, "/logs")[2]) == []
+    with serving(log=str(log)) as other:
+        listed = json.loads(get(other, "/logs")[2])
+        assert [each["path"] for each in listed] == ["log/1", "log/2", "log/10", "log"]
+        assert [each["file"] for each in listed] == ["link.jsonl.1", "link.jsonl.2", "link.jsonl.10", "link.jsonl"]
+        for each, text in zip(listed, ("first", "2nd", "tenth", "now")):
+            status, headers, body = get(other, "/" + each["path"])
+            assert (status, body.decode(), each["bytes"]) == (200, text, len(text))
+            assert headers["Content-Disposition"] == f'attachment; filename="{each["file"]}"'
+        for wrong in ("3", "4", "5", "6", "01", "carry", "1.txt", "", "0", "-1", "+1", "1/", "../other", "..%2Fother", "%2e%2e/other", "1%00", "%31%0a", "9" * 10,
+                      "%D9%A1", "1/../../other"):  # fmt: skip
+            status, _, body = get(other, "/log/" + wrong)
+            assert status in (400, 404) and b"secret" not in body, wrong
+    with serving(log=str(log), token=TOKEN) as other:
+        assert get(other, "/logs")[0] == get(other, "/log/1")[0] == 401
+        assert get(other, f"/log/1?token={TOKEN}")[2] == b"first"
 
 
 def test_events_show_each_view_of_the_latest_report(server):

@@ -91,7 +91,7 @@ function showSummary(text) {
   const said = JSON.parse(text);
   reportAt = performance.now();
   ended = Boolean(said.final);
-  byId("log").hidden = !said.log;
+  byId("log").hidden = byId("logs").hidden = !said.log;
   byId("set").textContent = said.set || "Link";
   byId("pattern").textContent = said.pattern || "";
   const states = said.answers.map((each) => each.state);
@@ -108,6 +108,30 @@ function showSummary(text) {
   const spoken = said.answers[0].answer + (states.includes("bad") ? ". Something is wrong." : ".");
   if (spoken !== saidBefore) byId("spoken").textContent = saidBefore = spoken;
   showNews();
+}
+
+// What link_log has put aside by now, each time the list is opened.
+async function listLogs() {
+  if (!byId("logs").open) return;
+  const list = byId("logs").lastElementChild;
+  const say = (text) => list.replaceChildren(element("li", "", text));
+  try {
+    const answer = await fetch(withToken("logs"));
+    if (!answer.ok) throw new Error(answer.statusText);
+    const aside = (await answer.json()).filter((each) => each.path !== "log");
+    if (!aside.length) return say("None was put aside");
+    list.replaceChildren(
+      ...aside.map((each) => {
+        const item = element("li");
+        const link = element("a", "", `${each.file} (${each.bytes} bytes)`);
+        link.href = withToken(each.path);
+        item.append(link);
+        return item;
+      }),
+    );
+  } catch {
+    say("The list cannot be had");
+  }
 }
 
 function showNews() {
@@ -177,6 +201,7 @@ byId("pause").addEventListener("click", () => {
 });
 byId("report").href = withToken("report");
 byId("log").href = withToken("log");
+byId("logs").addEventListener("toggle", listLogs);
 NARROW.addEventListener("change", connect);
 setInterval(showNews, 1000);
 connect();

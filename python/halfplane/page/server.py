@@ -9,6 +9,8 @@ The HTTP server of the page, on a thread and an event loop of its own.
 | `/report` | the latest report as JSON; 404 before the first |
 | `/metrics` | the same as OpenMetrics text |
 | `/log` | the file of `link_log` as a download; 404 where none was named |
+| `/logs` | the logs there are, as JSON: that one, and those put aside when they had grown long |
+| `/log/1` … | those put aside, as downloads |
 """
 
 from __future__ import annotations
@@ -28,6 +30,7 @@ from ..views.board import Board
 from . import limits
 from .gate import Gates
 from .guard import HEADERS, OWN_ADDRESS, Guard, plain
+from .logs import Logs
 from .metrics import CONTENT_TYPE, Collector
 from .stream import LAYOUTS, Client, Studio
 
@@ -55,7 +58,7 @@ class Server:
         if not 0 <= port <= 65535:
             raise ValueError(f"port is {port}: 0 to 65535 is wanted")
         self._guard = Guard(address, token, names)
-        self._address, self._asked, self._log_path = address, port, log
+        self._address, self._asked, self._logs = address, port, Logs(log)
         self._share, self._head_seconds = share, head_seconds
         self._log = logging.getLogger("halfplane.page")
         self._board = Board()
@@ -64,7 +67,7 @@ class Server:
         self._files = {path: (_HERE / path[1:]).read_bytes() for path in _FILES}
         self._files["/roles.css"] = themes.stylesheet().encode()
         self._page = (_HERE / "page.html").read_bytes()
-        self._routes = {"/": self._front, "/events": self._events, "/report": self._report, "/metrics": self._openmetrics, "/log": self._download}
+        self._routes = {"/": self._front, "/events": self._events, "/report": self._report, "/metrics": self._openmetrics, "/log": self._download, "/logs": self._list_logs}
         self._thread: threading.Thread | None = None
         self._loop: asyncio.AbstractEventLoop | None = None
         self._end: asyncio.Event | None = None
@@ -146,7 +149,7 @@ class Server:
 
     async def _main(self, listening: socket.socket, running: threading.Event) -> None:
         self._end = asyncio.Event()
-        self._studio = Studio(self._board, self._log, self._share, bool(self._log_path))
+        self._studio = Studio(self._board, self._log, self._share, bool(self._logs))
         inner = web.Server(
             self._answer, access_log=None, logger=_of_malformed_requests(), max_line_size=limits.LINE, max_field_size=limits.FIELD,
             lingering_time=0.0, tcp_keepalive=True,
@@ -192,7 +195,7 @@ class Server:
         unknown = self._guard.unknown(request)
         if unknown is not None:
             return unknown
-        route = self._routes.get(request.path)
+        route = self._download if request.path.startswith("/log/") else self._routes.get(request.path)
         return await route(request, gate) if route else plain(404, "There is nothing here.")
 
     async def _front(self, request: web.BaseRequest, gate) -> web.Response:
@@ -208,17 +211,23 @@ class Server:
     async def _openmetrics(self, request: web.BaseRequest, gate) -> web.Response:
         return web.Response(body=self._metrics.text(), headers={**HEADERS, "Content-Type": CONTENT_TYPE})
 
+    async def _list_logs(self, request: web.BaseRequest, gate) -> web.Response:
+        return web.json_response(self._logs.found(), headers=HEADERS)
+
     async def _download(self, request: web.BaseRequest, gate) -> web.StreamResponse:
-        if not self._log_path:
+        if not self._logs:
             return plain(404, "No log is offered here: link_page was given no path.")
         try:
-            file = open(self._log_path, "rb")
+            opened = self._logs.open(None if request.path == "/log" else request.path.removeprefix("/log/"))
         except OSError as error:
             self._log.error("the log cannot be read: %s", error)
             return plain(404, "The log cannot be read.")
+        if opened is None:
+            return plain(404, "There is no log of this number.")
+        file, name = opened
         with file:
             size = os.fstat(file.fileno()).st_size
-            name = Path(self._log_path).name.encode("ascii", "replace").decode().replace('"', "_").replace("\\", "_")
+            name = name.encode("ascii", "replace").decode().replace('"', "_").replace("\\", "_")
             answer = web.StreamResponse(headers={**HEADERS, "Content-Type": "application/x-ndjson", "Content-Disposition": f'attachment; filename="{name}"'})
             answer.content_length = size  # what is written meanwhile belongs to the next download
             answer.force_close()
