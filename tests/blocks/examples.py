@@ -8,6 +8,7 @@ import json
 import os
 import pathlib
 import shutil
+import socket
 import subprocess
 import sys
 
@@ -30,14 +31,23 @@ def last_report(command, folder):
     return json.loads(done.stdout.strip().splitlines()[-1])
 
 
-def run_grc(path, folder):
+def compile_grc(path, folder):
     settings = {**os.environ, "GRC_BLOCKS_PATH": str(SOURCE / "grc"), "HOME": str(folder)}
     done = subprocess.run(["grcc", "-o", str(folder), str(path)], text=True, env=settings,
                           stdout=subprocess.PIPE, stderr=subprocess.STDOUT)
     assert done.returncode == 0, done.stdout
+    return folder / (path.stem + ".py")
+
+
+def run_grc(path, folder):
+    made = compile_grc(path, folder)
     # What a flowgraph reads by a bare name stands beside it.
     shutil.copy(SOURCE / "examples" / "recordings" / "firn-14db.sigmf-data", folder)
-    return last_report([sys.executable, folder / (path.stem + ".py")], folder)
+    # Two that run at once shall not want one port.
+    with socket.socket() as free:
+        free.bind(("127.0.0.1", 0))
+        options = ["--page-port", free.getsockname()[1]] if "page_port" in path.read_text() else []
+    return last_report([sys.executable, made, *options], folder)
 
 
 def run_py(path, folder):
@@ -115,6 +125,44 @@ def test_every_flowgraph_stands_twice_and_is_tested():
 @pytest.mark.parametrize("run, suffix", [(run_grc, ".grc"), (run_py, ".py")], ids=["grc", "py"])
 def test_says_what_it_must(name, run, suffix, tmp_path):
     TASKS[name](run(FLOWGRAPHS / (name + suffix), tmp_path))
+
+
+def test_the_simulated_link_serves_a_page_and_wants_no_screen(tmp_path):
+    text = compile_grc(FLOWGRAPHS / "a_simulated_link.grc", tmp_path).read_text()
+    assert "halfplane.link_page(page_port, '127.0.0.1'" in text and "'report'), (self.page, 'report')" in text
+    assert "Qt" not in text and "link_panel" not in text
+
+
+def test_the_simulated_link_shows_itself_on_a_screen_where_asked(tmp_path):
+    """As its note says: the panel enabled, generated for Qt. Made on Qt's offscreen platform, with the link in it."""
+    flow = yaml.safe_load((FLOWGRAPHS / "a_simulated_link.grc").read_text())
+    flow["options"]["parameters"]["generate_options"] = "qt_gui"
+    panel = next(block for block in flow["blocks"] if block["id"] == "halfplane_link_panel")
+    assert panel["states"]["state"] == "disabled"
+    panel["states"]["state"] = "enabled"
+    changed = tmp_path / "a_simulated_link.grc"
+    changed.write_text(yaml.safe_dump(flow))
+    made = compile_grc(changed, tmp_path)
+    code = f"""
+import sys; sys.path.insert(0, {str(tmp_path)!r})
+from PyQt5 import Qt
+application = Qt.QApplication(sys.argv)
+import a_simulated_link, time
+link = a_simulated_link.a_simulated_link(page_port=0)
+link.show()
+link.start()
+end = time.monotonic() + 60
+while link.panel.panel.board.taken < 1 and time.monotonic() < end:
+    application.processEvents()
+    time.sleep(0.01)
+link.stop()
+link.wait()
+application.processEvents()
+print(link.panel.panel.board.latest()[0]["set"], link.panel.isVisible())
+"""
+    settings = {**os.environ, "QT_QPA_PLATFORM": "offscreen", "HOME": str(tmp_path)}
+    done = subprocess.run([sys.executable, "-c", code], cwd=tmp_path, env=settings, capture_output=True, text=True, timeout=SECONDS)
+    assert done.stdout.split()[-2:] == ["apsk:4+8:2.3", "True"], done.stderr + made.read_text()[-2000:]
 
 
 def test_live_traffic_is_the_same_code_in_both():
