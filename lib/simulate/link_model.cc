@@ -77,8 +77,35 @@ link_model::link_model(const signal_set& set, const simulation_options& options)
     }
 }
 
+namespace {
+
+/// Four symbols a word, for sets of equal priors and a power of two of at most 256 points: a byte's low bits
+/// each. `first` a multiple of 4.
+void symbols_of_bytes(const kernels::random_words& words,
+                      std::uint64_t first,
+                      std::size_t count,
+                      std::size_t size,
+                      std::uint16_t* index)
+{
+    std::uint32_t word[link_model::block / 4 + 1];
+    words.draw(first / 4, (count + 3) / 4, word);
+    const auto mask = static_cast<std::uint32_t>(size - 1);
+    std::size_t k = 0;
+    for (; k + 4 <= count; k += 4)
+        for (unsigned byte = 0; byte < 4; ++byte)
+            index[k + byte] = static_cast<std::uint16_t>(word[k / 4] >> 8 * byte & mask);
+    for (; k < count; ++k)
+        index[k] = static_cast<std::uint16_t>(word[k / 4] >> 8 * (k % 4) & mask);
+}
+
+} // namespace
+
 void link_model::draw_symbols(std::uint64_t first, std::size_t count, std::uint16_t* index) const
 {
+    if (const auto size = d_set.size(); d_limit.empty() && size <= 256 && (size & (size - 1)) == 0) {
+        symbols_of_bytes(kernels::random_words(d_seed, streams::symbols), first, count, size, index);
+        return;
+    }
     std::uint32_t word[block];
     kernels::random_words(d_seed, streams::symbols).draw(first, count, word);
     if (d_limit.empty()) {

@@ -93,3 +93,36 @@ TEST(Tally, SparseAndDenseAgreeWithAPlainMapAndMerge)
         EXPECT_EQ(whole.accounted(), 200000u);
     }
 }
+
+/// In calls of every length: whole groups, rests, lanes that take turns, sets beyond them.
+TEST(Tally, LongCallsEqualOneSymbolAtATime)
+{
+    std::mt19937_64 random(3);
+    for (const std::size_t size : {std::size_t{2}, std::size_t{16}, std::size_t{256}, std::size_t{300}})
+        for (const std::size_t n : {std::size_t{0},
+                                    std::size_t{1},
+                                    std::size_t{255},
+                                    std::size_t{256},
+                                    std::size_t{1023},
+                                    std::size_t{5003}})
+            for (const int wrong : {0, 1, 50, 100}) { // per cent
+                const auto set = ring(size);
+                indices sent(n), decided(n);
+                for (std::size_t k = 0; k < n; ++k) {
+                    sent[k] = static_cast<std::uint16_t>(random() % size);
+                    decided[k] = static_cast<int>(random() % 100) < wrong
+                                     ? static_cast<std::uint16_t>(random() % size)
+                                     : sent[k];
+                }
+                tally at_once(set), one_by_one(set);
+                at_once.count(sent.data(), decided.data(), n);
+                for (std::size_t k = 0; k < n; ++k)
+                    one_by_one.count(sent[k], decided[k]);
+                EXPECT_EQ(at_once.symbols, n);
+                EXPECT_EQ(at_once.symbol_errors, one_by_one.symbol_errors);
+                EXPECT_EQ(at_once.bit_errors, one_by_one.bit_errors);
+                EXPECT_EQ(at_once.bit_errors_squared, one_by_one.bit_errors_squared);
+                EXPECT_EQ(at_once.sent, one_by_one.sent);
+                EXPECT_EQ(at_once.by_bit, one_by_one.by_bit);
+            }
+}
