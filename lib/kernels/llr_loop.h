@@ -155,6 +155,71 @@ inline void max_ratios(const llr_part& v, float* __restrict value, float (*ratio
     }
 }
 
+/*!
+ * Max-log ratios of a part whose 2^bits labels are all there, in order: the same tree over the metrics
+ * themselves. Only the difference of two largest becomes a float, so nothing has to be measured from anywhere
+ * first.
+ */
+template <unsigned bits, typename Metric>
+inline void max_ratios_of_all(Metric metric_of, const std::uint8_t* position, float (*ratio)[lanes])
+{
+    alignas(64) double metric[std::size_t{1} << bits][lanes];
+    for (std::size_t i = 0; i < std::size_t{1} << bits; ++i)
+        for (std::size_t l = 0; l < lanes; ++l)
+            metric[i][l] = metric_of(i, l);
+    for (unsigned bit = bits; bit-- > 0;) {
+        const std::size_t half = std::size_t{1} << bit;
+        alignas(64) double zero[lanes], one[lanes];
+        for (std::size_t l = 0; l < lanes; ++l) {
+            const double a = metric[0][l], b = metric[half][l];
+            zero[l] = a, one[l] = b;
+            metric[0][l] = a > b ? a : b;
+        }
+        for (std::size_t j = 1; j < half; ++j)
+            for (std::size_t l = 0; l < lanes; ++l) {
+                const double a = metric[j][l], b = metric[j + half][l];
+                zero[l] = zero[l] > a ? zero[l] : a;
+                one[l] = one[l] > b ? one[l] : b;
+                metric[j][l] = a > b ? a : b;
+            }
+        float* const row = ratio[position[bit]];
+        for (std::size_t l = 0; l < lanes; ++l)
+            row[l] = static_cast<float>(zero[l] - one[l]);
+    }
+}
+
+template <typename Metric>
+inline bool max_ratios_of_all(const llr_part& v, Metric metric_of, float (*ratio)[lanes])
+{
+    switch (v.bits) {
+    case 1:
+        return max_ratios_of_all<1>(metric_of, v.position, ratio), true;
+    case 2:
+        return max_ratios_of_all<2>(metric_of, v.position, ratio), true;
+    case 3:
+        return max_ratios_of_all<3>(metric_of, v.position, ratio), true;
+    case 4:
+        return max_ratios_of_all<4>(metric_of, v.position, ratio), true;
+    default:
+        return false;
+    }
+}
+
+inline bool max_ratios_of_all(const llr_part& v, const double* x, const double* y, float (*ratio)[lanes])
+{
+    if (v.missing_count > 0)
+        return false;
+    const double *re = v.re, *im = v.im, *constant = v.constant;
+    if (v.axis == llr_part::in_phase)
+        return max_ratios_of_all(
+            v, [=](std::size_t i, std::size_t l) { return x[l] * re[i] + constant[i]; }, ratio);
+    if (v.axis == llr_part::quadrature)
+        return max_ratios_of_all(
+            v, [=](std::size_t i, std::size_t l) { return y[l] * im[i] + constant[i]; }, ratio);
+    return max_ratios_of_all(
+        v, [=](std::size_t i, std::size_t l) { return x[l] * re[i] + y[l] * im[i] + constant[i]; }, ratio);
+}
+
 /// For parts of few points: all metrics are kept, and measured from the largest. No sample is looked up.
 template <typename Metric>
 inline void few_differences(const llr_part& v, float* __restrict value, Metric metric_of)
@@ -187,10 +252,98 @@ inline void few_differences(const llr_part& v, const double* x, const double* y,
         });
 }
 
+#if defined(__AVX512F__) && defined(__GNUC__) && !defined(__clang__)
+#define HALFPLANE_WIDE_STORES 1
+
+using floats = float __attribute__((vector_size(64)));
+using doubles = double __attribute__((vector_size(64)));
+using places = std::int64_t __attribute__((vector_size(64)));
+using small_places = std::int32_t __attribute__((vector_size(64)));
+
+inline floats row(const float* from)
+{
+    floats v;
+    __builtin_memcpy(&v, from, sizeof v);
+    return v;
+}
+
+inline void store(doubles v, float* out)
+{
+    __builtin_memcpy(out, &v, sizeof v);
+}
+
+/// a0 b0 a1 b1 …: the first half, and the second; a pair counts as one double from here on.
+inline doubles low_pairs(floats a, floats b)
+{
+    return (doubles)__builtin_shuffle(
+        a, b, small_places{0, 16, 1, 17, 2, 18, 3, 19, 4, 20, 5, 21, 6, 22, 7, 23});
+}
+inline doubles high_pairs(floats a, floats b)
+{
+    return (doubles)__builtin_shuffle(
+        a, b, small_places{8, 24, 9, 25, 10, 26, 11, 27, 12, 28, 13, 29, 14, 30, 15, 31});
+}
+inline doubles low_quads(doubles a, doubles b)
+{
+    return __builtin_shuffle(a, b, places{0, 8, 1, 9, 2, 10, 3, 11});
+}
+inline doubles high_quads(doubles a, doubles b)
+{
+    return __builtin_shuffle(a, b, places{4, 12, 5, 13, 6, 14, 7, 15});
+}
+
+/// Pairs of eight samples, of the bits two by two.
+template <unsigned bits>
+inline void store_pairs(const doubles* pair, float* out)
+{
+    if constexpr (bits == 2) {
+        store(pair[0], out);
+    } else if constexpr (bits == 4) {
+        store(low_quads(pair[0], pair[1]), out);
+        store(high_quads(pair[0], pair[1]), out + 16);
+    } else if constexpr (bits == 6) {
+        // a0 b0 c0 a1 b1 c1 a2 b2, c2 a3 b3 …, … c7: first a and b, then c into its places.
+        store(__builtin_shuffle(__builtin_shuffle(pair[0], pair[1], places{0, 8, 0, 1, 9, 0, 2, 10}),
+                                pair[2],
+                                places{0, 1, 8, 3, 4, 9, 6, 7}),
+              out);
+        store(__builtin_shuffle(__builtin_shuffle(pair[0], pair[1], places{0, 3, 11, 0, 4, 12, 0, 5}),
+                                pair[2],
+                                places{10, 1, 2, 11, 4, 5, 12, 7}),
+              out + 16);
+        store(__builtin_shuffle(__builtin_shuffle(pair[0], pair[1], places{13, 0, 6, 14, 0, 7, 15, 0}),
+                                pair[2],
+                                places{0, 13, 2, 3, 14, 5, 6, 15}),
+              out + 32);
+    } else {
+        static_assert(bits == 8);
+        const doubles a = low_quads(pair[0], pair[1]), b = low_quads(pair[2], pair[3]),
+                      c = high_quads(pair[0], pair[1]), d = high_quads(pair[2], pair[3]);
+        constexpr places first{0, 1, 8, 9, 2, 3, 10, 11}, second{4, 5, 12, 13, 6, 7, 14, 15};
+        store(__builtin_shuffle(a, b, first), out);
+        store(__builtin_shuffle(a, b, second), out + 16);
+        store(__builtin_shuffle(c, d, first), out + 32);
+        store(__builtin_shuffle(c, d, second), out + 48);
+    }
+}
+#endif
+
 /// Bit by bit to sample by sample, `bits` of them.
 template <unsigned bits>
 inline void interleave(const float (*ratio)[lanes], float* __restrict out)
 {
+#ifdef HALFPLANE_WIDE_STORES
+    if constexpr (bits % 2 == 0) {
+        doubles low[bits / 2], high[bits / 2];
+        for (unsigned k = 0; k < bits / 2; ++k) {
+            const floats a = row(ratio[2 * k]), b = row(ratio[2 * k + 1]);
+            low[k] = low_pairs(a, b), high[k] = high_pairs(a, b);
+        }
+        store_pairs<bits>(low, out);
+        store_pairs<bits>(high, out + 8 * bits);
+        return;
+    }
+#endif
     for (std::size_t l = 0; l < lanes; ++l)
         for (unsigned k = 0; k < bits; ++k)
             out[l * bits + k] = ratio[k][l];
@@ -228,7 +381,9 @@ inline void part_ratios(const llr_view& whole,
                         std::int32_t* exponent,
                         float (*ratio)[lanes])
 {
-    float own[16][lanes];
+    alignas(64) float own[16][lanes];
+    if (!whole.exact && max_ratios_of_all(v, x, y, ratio))
+        return;
     if (v.few()) {
         few_differences(v, x, y, value);
     } else {
@@ -280,7 +435,7 @@ void llr(const llr_view& v,
     const std::size_t labels = std::size_t{1} << bits;
     float* const value = scratch;
     std::int32_t* const exponent = reinterpret_cast<std::int32_t*>(scratch + labels * lanes);
-    float ratio[16][lanes];
+    alignas(64) float ratio[16][lanes];
     while (count > 0) {
         const std::size_t n = count < lanes ? count : lanes;
         alignas(64) float sample[2 * lanes] = {};
