@@ -1,10 +1,16 @@
 # SPDX-License-Identifier: GPL-3.0-or-later
 """`halfplane simulate`: schema, seeds, intervals, importance sampling, and Ctrl-C."""
 
+import fcntl
 import json
 import os
+import pty
+import re
+import select
 import signal
+import struct
 import subprocess
+import termios
 import time
 
 import pytest
@@ -102,3 +108,48 @@ def test_table_and_refusals():
     assert "saturation must be" in refused("simulate", FIRN, "--es-n0", "3", "--saturation", "-1")
     assert "--width does not go with --rare" in refused("simulate", FIRN, "--es-n0", "3", "--rare", "--width", "0.1")
     assert "--es-n0 or --eb-n0" in refused("simulate", FIRN)
+
+
+def on_a_terminal(*arguments, columns=80, interrupt_after=None):
+    """(what a terminal of that width was sent, escape sequences taken out; exit code)."""
+    child, terminal = pty.fork()
+    if child == 0:
+        os.environ.pop("COLUMNS", None)
+        os.environ["TERM"] = "xterm"
+        fcntl.ioctl(1, termios.TIOCSWINSZ, struct.pack("HHHH", 40, columns, 0, 0))
+        os.execv(BUILD / "halfplane", ["halfplane", *arguments])
+    sent, end = b"", None if interrupt_after is None else time.monotonic() + interrupt_after
+    while True:
+        try:
+            if select.select([terminal], [], [], 0.1)[0]:
+                sent += os.read(terminal, 65536)
+        except OSError:  # the other end is closed
+            break
+        if end is not None and time.monotonic() > end:
+            os.kill(child, signal.SIGINT)
+            end = None
+    os.close(terminal)
+    return re.sub(r"\x1b\[[0-9;?]*[A-Za-z]", "", sent.decode()), os.waitstatus_to_exitcode(os.waitpid(child, 0)[1])
+
+
+def test_progress_on_a_terminal():
+    shown, code = on_a_terminal("simulate", "qam:16", "--es-n0", "40", "--max-symbols", "2e12", "--errors", "10", interrupt_after=4)
+    assert code == 130
+    assert re.search(r"40\.00 dB ━+", shown)  # which Es/N0, and a bar
+    assert re.search(r"\d %\s+\d+:\d\d:\d\d", shown)  # its share, and the estimated end
+    # What was counted until Ctrl-C stands in the table.
+    row = next(line for line in shown.splitlines() if line.strip().startswith("40.00") and "━" not in line)
+    assert int(re.search(r"\d{1,3}(\u202f\d{3})+", row)[0].replace("\u202f", "")) > 1_000_000
+
+
+@pytest.mark.parametrize("columns", [80, 100, 160])
+def test_no_figure_is_cut_on_a_terminal(columns):
+    shown, code = on_a_terminal("simulate", "qam:16", "--es-n0", "12..14/2", "--errors", "5000", columns=columns)
+    rows = [line for line in shown.splitlines() if re.match(r"\s+1[24]\.00 ", line) and "━" not in line]
+    assert code == 0 and len(rows) >= 4
+    for row in rows:
+        assert len(row) <= columns and not re.search(r"\S…|…\S", row), row
+    text = " ".join(rows)
+    (first, _) = document("simulate", "qam:16", "--es-n0", "12..14/2", "--errors", "5000")["rows"]
+    for value in (first["ser"], first["ser_low"], first["ser_high"], first["exact"]["ser"], first["ber"], first["exact"]["ber"]):
+        assert f"{value:.3e}" in text

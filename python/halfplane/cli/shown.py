@@ -20,14 +20,43 @@ def console(stream=None):
 
 
 def show(*parts):
-    """Prints to stdout; into a file or a pipe without the blanks that fill a table's last column."""
+    """
+    Prints to stdout; into a file or a pipe without the blanks that fill a table's last column. On a terminal that is too narrow
+    for a table its columns stand in several, one below the other: no figure is ever cut.
+    """
     out = console()
     if out.is_terminal:
-        out.print(*parts, sep="\n")
+        out.print(*(piece for part in parts for piece in (_fitting(part, out) if isinstance(part, Table) else [part])), sep="\n")
         return
     with out.capture() as text:
         out.print(*parts, sep="\n")
     sys.stdout.write("".join(line.rstrip() + "\n" for line in text.get().splitlines()))
+
+
+def _fitting(whole, out):
+    """The table, or tables with as many of its columns as fit, each led by the first."""
+    figures = all(column.justify == "right" and column.no_wrap for column in whole.columns)
+    if not figures or _width(whole, out) <= out.width:
+        return [whole]
+    first, *others = whole.columns
+    pieces, shown = [], [first]
+    for column in others:
+        if len(shown) > 1 and _width(_of_columns(whole, [*shown, column]), out) > out.width:
+            pieces.append(shown)
+            shown = [first]
+        shown.append(column)
+    return [_of_columns(whole, columns, titled=k == 0) for k, columns in enumerate([*pieces, shown])]
+
+
+def _width(whole, out):
+    return out.measure(whole, options=out.options.update_width(10_000)).maximum
+
+
+def _of_columns(whole, columns, titled=True):
+    piece = table(*((column.header, column.style or None) for column in columns), title=whole.title if titled else None)
+    for cells in zip(*(column.cells for column in columns)):
+        piece.add_row(*cells)
+    return piece
 
 
 def quiet(text):
