@@ -3,6 +3,9 @@
 
 import hashlib
 import json
+import signal
+import subprocess
+import sys
 import time
 
 import numpy as np
@@ -228,3 +231,50 @@ def test_losses_and_premises_are_left_out_on_request():
         graph.connect(blocks.vector_source_s(sent.tolist()), (watch, 1))
         graph.run()
         assert ("premises" in json.loads(watch.report())) == explain
+
+
+ENDLESS = """
+import sys
+import numpy as np
+from gnuradio import blocks, gr, halfplane
+
+which, log = halfplane.load_set("psk:4"), sys.argv[1]
+rng = np.random.default_rng(int(sys.argv[2]))
+sent = rng.integers(4, size=100000)
+decided = np.where(rng.random(100000) < 0.02, (sent + 1) % 4, sent)
+watch = halfplane.link_watch(which, "", 1000, target="ser:0.1", resume=log)
+writer, graph = halfplane.link_log(log), gr.top_block()
+graph.connect(blocks.vector_source_c(np.array(which.points)[decided].tolist(), True), (watch, 0))
+graph.connect(blocks.vector_source_s(sent.tolist(), True), (watch, 1))
+graph.msg_connect(watch, "report", writer, "report")
+graph.run()
+"""
+
+
+def test_killed_while_running_and_gone_on_with(tmp_path):
+    """kill -9 of whole flowgraphs, three times: each goes on from what the one before had written, and no line is torn twice."""
+    log = tmp_path / "link.jsonl"
+    before = None
+    for attempt in range(3):
+        running = subprocess.Popen([sys.executable, "-c", ENDLESS, str(log), str(attempt)])
+        end, first = time.monotonic() + 60, log.read_text().count("\n") if log.exists() else 0
+        while not log.exists() or log.read_text().count("\n") < first + 6:
+            assert running.poll() is None and time.monotonic() < end
+            time.sleep(0.02)
+        running.send_signal(signal.SIGKILL)
+        running.wait()
+        reports = []
+        for line in log.read_text().splitlines():
+            try:
+                reports.append(json.loads(line))
+            except ValueError:
+                assert "sequence" not in line or not line.endswith("}")  # the one that was being written
+        reports = [report for report in reports if "sequence" in report]
+        assert [report["sequence"] for report in reports] == sorted({report["sequence"] for report in reports})
+        for earlier, later in zip(reports, reports[1:]):
+            assert later["total"]["judged"] - earlier["total"]["judged"] == later["window"]["symbols"]
+        last = reports[-1]
+        assert abs(last["total"]["ser"] - 0.02) < 0.002 and last["total"]["in"] == last["total"]["judged"] + last["total"]["pending"]
+        if before is not None:
+            assert last["sequence"] > before["sequence"] and last["total"]["judged"] > before["total"]["judged"]
+        before = last
